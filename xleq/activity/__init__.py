@@ -1,0 +1,1 @@
+"""Departure from ideal: gas fugacity, aqueous activity."""

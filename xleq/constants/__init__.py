@@ -1,0 +1,1 @@
+"""Equilibrium constants: bases, scaling, summing, temperature."""

@@ -1,0 +1,1 @@
+"""Chemical equilibrium of one fluid with pure solids and liquids: problem in, certified solution out."""

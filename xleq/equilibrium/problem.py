@@ -1,0 +1,167 @@
+"""An equilibrium problem and its solution: the records that every solver reads and writes."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from fractions import Fraction
+from typing import Literal, Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from xleq.errors import NotCertifiedError
+from xleq.units import P_STANDARD_BAR, R_L_BAR
+
+#: fluid: mixed in the one gas or solution; pure: a pure solid or liquid, activity 1 while present.
+Phase = Literal["fluid", "pure"]
+#: P: gas at T and P; V: gas at T and volume; C: solution of given volume; X: liquid on mole fractions.
+Kind = Literal["P", "V", "C", "X"]
+Status = Literal["equilibrium", "exhausted", "frozen", "fluid vanished", "indeterminate"]
+
+
+@dataclass(frozen=True, slots=True)
+class State:
+    """What is held fixed, and so how an activity follows from the amounts.
+
+    The activity of a fluid species i is ln a_i = ln n_i - s ln N + c + ln gamma_i, where N is the amount
+    of fluid, s is 1 where activities follow fractions (P, X) and 0 where they follow concentrations (V, C).
+
+    Parameters
+    ----------
+    kind : {"P", "V", "C", "X"}
+    t : float
+        Temperature. [K]
+    p : float
+        Absolute pressure, for P. [bar]
+    v : float
+        Volume, for V and C. [L]
+    """
+
+    kind: Kind
+    t: float = math.nan
+    p: float = math.nan
+    v: float = 1.0
+
+    @property
+    def per_total(self) -> int:
+        """1 where activities follow fractions, 0 where they follow concentrations."""
+        return 1 if self.kind in "PX" else 0
+
+    @property
+    def shift(self) -> float:
+        """The constant c of the ln activity."""
+        if self.kind == "P":
+            return math.log(self.p / P_STANDARD_BAR)
+        if self.kind == "V":
+            return math.log(R_L_BAR * self.t / (self.v * P_STANDARD_BAR))
+        if self.kind == "C":
+            return -math.log(self.v)
+        return 0.0
+
+
+class Nonideality(Protocol):
+    """Departure of the fluid from ideal: ln gamma (or ln phi) of its species."""
+
+    name: str
+
+    def ln_gamma(self, n: NDArray[np.float64], state: State) -> NDArray[np.float64]:
+        """Ln gamma [n_species] at the amounts n [n_species, mol]; entries of pure species are 0."""
+        ...
+
+
+@dataclass(frozen=True, slots=True)
+class Problem:
+    """Amounts, reactions and constants of one equilibrium.
+
+    Parameters
+    ----------
+    species : tuple [n_species] of str
+    phases : tuple [n_species] of {"fluid", "pure"}
+    nu : tuple [n_reactions] of tuple [n_species] of Fraction
+        Stoichiometric coefficients, products positive. Exact.
+    n0 : tuple [n_species] of float
+        Amounts fed. [mol]  At least 0.
+    ln_k : tuple [n_reactions] of float
+        ln K° (p° = 1 bar, c° = 1 mol/L, or mole fractions for X). [-]
+    state : State
+    formulas : tuple [n_species] of mapping element -> count (charge under "e"), or None
+        Composition of each species where it is known, for the certificate's own balance.
+    model : Nonideality, optional
+        Departure of the fluid from ideal.
+    """
+
+    species: tuple[str, ...]
+    phases: tuple[Phase, ...]
+    nu: tuple[tuple[Fraction, ...], ...]
+    n0: tuple[float, ...]
+    ln_k: tuple[float, ...]
+    state: State
+    formulas: tuple[Mapping[str, Fraction] | None, ...] | None = None
+    model: Nonideality | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Certificate:
+    """Proof, made without the solver's own variables, that amounts solve a problem.
+
+    Parameters
+    ----------
+    ok : bool
+    reason : str
+        What failed; empty when nothing did.
+    residuals : tuple [n_reactions] of float
+        ln Q - ln K of each reaction; nan where a species of it is absent. [-]
+    worst_balance : float
+        Largest relative departure of an element or charge balance. [-]
+    """
+
+    ok: bool
+    reason: str
+    residuals: tuple[float, ...]
+    worst_balance: float
+
+
+@dataclass(frozen=True, slots=True)
+class Solution:
+    """The equilibrium of a problem, always of this shape.
+
+    Parameters
+    ----------
+    n : tuple [n_species] of float
+        Amounts at equilibrium. [mol]  Exactly 0 for a species that cannot form.
+    xi : tuple [n_reactions] of float
+        Extents; a least-norm choice where the reactions are dependent. [mol]
+    status : Status
+    exhausted : tuple of str
+        Pure phases that are used up, or that do not form.
+    certificate : Certificate
+    iterations : int
+    method : str
+        What found it, in words for the audit.
+    notes : tuple of str
+        What a checker should know: dependent reactions, species that cannot form.
+    """
+
+    problem: Problem
+    n: tuple[float, ...]
+    xi: tuple[float, ...]
+    status: Status
+    exhausted: tuple[str, ...]
+    certificate: Certificate
+    iterations: int
+    method: str
+    notes: tuple[str, ...] = field(default=())
+
+    def require(self) -> Solution:
+        """Give the solution itself, if its certificate holds.
+
+        Raises
+        ------
+        NotCertifiedError
+            If it does not: a doubtful composition is never given.
+        """
+        if not self.certificate.ok:
+            raise NotCertifiedError(f"no certified equilibrium: {self.certificate.reason}")
+        return self

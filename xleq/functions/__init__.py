@@ -1,0 +1,1 @@
+"""The table of worksheet functions and their definitions by topic."""

@@ -1,0 +1,1 @@
+"""Where worksheet functions run: headless, Excel, LibreOffice."""

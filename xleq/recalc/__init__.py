@@ -1,0 +1,1 @@
+"""Formulas parsed, compiled and evaluated as the spreadsheet would."""

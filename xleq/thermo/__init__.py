@@ -1,0 +1,1 @@
+"""Formation data of species, and what follows from them."""

@@ -1,0 +1,1 @@
+"""Workbook files: read whole, patched without loss."""
