@@ -1,0 +1,244 @@
+"""The records in which worksheet functions are declared, and the one way to call them.
+
+A declaration is data: hosts, help texts, the reference and the tests are all read from it. Calling turns cell
+values into what the definition computes with, turns exceptions into cell errors (here and nowhere else), and
+lays out a list in the direction of the range it belongs to.
+"""
+
+from __future__ import annotations
+
+import inspect
+from collections import OrderedDict
+from collections.abc import Callable, Hashable, Sequence
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Any, Final, Literal, TypeAlias
+
+from xleq.cells import BLANK, MISSING, CellError, Grid, Missing, Value
+from xleq.errors import InputError, XleqError
+from xleq.functions.arguments import LIST_KINDS, READERS, Kind
+
+#: What a host hands over for one argument.
+Given: TypeAlias = Value | Grid | Missing
+#: What a definition may return: one cell, a list to be laid out, or a block.
+Result: TypeAlias = Value | list[Value] | Grid
+Topic = Literal["reactions", "constants", "composition", "thermochemistry", "solutions", "program"]
+
+
+class _Required:
+    """Marks an argument without a default."""
+
+    def __repr__(self) -> str:
+        return "REQUIRED"
+
+
+REQUIRED: Final = _Required()
+
+
+@dataclass(frozen=True, slots=True)
+class Argument:
+    """One argument of a worksheet function.
+
+    Parameters
+    ----------
+    name : str
+        As users see it; the definition's parameter is the same in lower case.
+    kind : Kind
+        How cell values are read, see `xleq.functions.arguments`.
+    meaning : str
+        One clause for help texts, without the unit.
+    default : Value or None
+        Taken when the argument is omitted or an empty cell; None where leaving it out means "not given".
+    unit : str
+        Default unit for help texts; empty where there is none.
+    known : tuple of str
+        Names of the options that an argument of kind "options" takes, or the words of a "word".
+    """
+
+    name: str
+    kind: Kind
+    meaning: str
+    default: Value | _Required | None = REQUIRED
+    unit: str = ""
+    known: tuple[str, ...] = ()
+
+    @property
+    def optional(self) -> bool:
+        """Whether it may be left out."""
+        return self.default is not REQUIRED
+
+
+@dataclass(frozen=True, slots=True)
+class Example:
+    """A formula that anyone can type, and what it must show.
+
+    Parameters
+    ----------
+    formula : str
+        With the equals sign.
+    shows : Value or Grid
+        The value of its cell, or of its block.
+    """
+
+    formula: str
+    shows: Value | Grid
+
+
+@dataclass(frozen=True)
+class Function:
+    """A worksheet function.
+
+    Parameters
+    ----------
+    name : str
+    topic : Topic
+    arguments : tuple of Argument
+    gives : str
+        What the cell shows, with its unit.
+    call : callable
+        The definition; one parameter for each argument, in order.
+    errors : tuple of str
+        When it gives an error, a clause each, beginning with the error.
+    source : str
+        Where the method comes from.
+    examples : tuple of Example
+    volatile : bool
+    """
+
+    name: str
+    topic: Topic
+    arguments: tuple[Argument, ...]
+    gives: str
+    call: Callable[..., Result]
+    errors: tuple[str, ...]
+    source: str
+    examples: tuple[Example, ...]
+    volatile: bool = False
+
+    @cached_property
+    def least(self) -> int:
+        """Fewest arguments."""
+        return sum(not a.optional for a in self.arguments)
+
+    @cached_property
+    def syntax(self) -> str:
+        """The call as it is written in help texts, optional arguments in brackets."""
+        names = (f"[{a.name}]" if a.optional else a.name for a in self.arguments)
+        return f"{self.name}({', '.join(names)})"
+
+    @cached_property
+    def layout_argument(self) -> int | None:
+        """Number of the argument whose direction a list follows."""
+        names = [a.name for a in self.arguments]
+        if "species" in names and self.arguments[names.index("species")].kind in LIST_KINDS:
+            return names.index("species")
+        return next((i for i, a in enumerate(self.arguments) if a.kind in LIST_KINDS), None)
+
+    def parameters_match(self) -> bool:
+        """Whether the definition takes exactly the declared arguments."""
+        return [a.name.lower() for a in self.arguments] == list(inspect.signature(self.call).parameters)
+
+
+def evaluate(function: Function, given: Sequence[Given]) -> Value | Grid:
+    """Value or block of a worksheet function for what a host hands over.
+
+    An error among the arguments is returned as it came. Every `XleqError` becomes a cell error with its
+    reason; any other exception is a defect of the program and is left to the host.
+    """
+    for item in given:
+        error = _first_error(item)
+        if error is not None:
+            return error
+    try:
+        result = function.call(*_read_all(function, given))
+    except XleqError as e:
+        return CellError(e.cell, f"{function.name}: {e}")
+    return _laid_out(function, given, result)
+
+
+def _first_error(item: Given) -> CellError | None:
+    if isinstance(item, CellError):
+        return item
+    if isinstance(item, list):
+        return next((v for row in item for v in row if isinstance(v, CellError)), None)
+    return None
+
+
+def _read_all(function: Function, given: Sequence[Given]) -> list[Any]:
+    declared = function.arguments
+    if len(given) > len(declared):
+        raise InputError(f"{len(given)} arguments given, {len(declared)} at most: {function.syntax}")
+    values: list[Any] = []
+    for i, argument in enumerate(declared):
+        item: Given = given[i] if i < len(given) else MISSING
+        if isinstance(item, list) and len(item) == 1 and len(item[0]) == 1:
+            item = item[0][0]
+        if item is MISSING or item is BLANK:
+            if isinstance(argument.default, _Required):
+                raise InputError(f"argument {argument.name} is missing or empty: {argument.meaning}")
+            if argument.default is None:
+                values.append(None)
+                continue
+            item = argument.default
+        try:
+            values.append(READERS[argument.kind](item, argument.known))
+        except XleqError as e:
+            raise _named(e, argument.name) from e
+    return values
+
+
+def _named(error: XleqError, name: str) -> XleqError:
+    """The same kind of error with the argument's name before its message."""
+    base = next(c for c in type(error).__mro__ if c.__init__ is XleqError.__init__)
+    named = base(f"{name}: {error}")
+    assert isinstance(named, XleqError)
+    return named
+
+
+def _laid_out(function: Function, given: Sequence[Given], result: Result) -> Value | Grid:
+    if not isinstance(result, list):
+        return result
+    if result and isinstance(result[0], list):
+        return result  # type: ignore[return-value]  # a block already
+    values: list[Value] = result  # type: ignore[assignment]
+    index = function.layout_argument
+    if index is not None and index < len(given):
+        item = given[index]
+        if isinstance(item, list) and len(item) == 1 and len(item[0]) > 1:
+            return [values]
+    return [[v] for v in values]
+
+
+class Memory:
+    """Remembers results by arguments, so that the same question in ten cells is answered once.
+
+    Parameters
+    ----------
+    size : int
+        Most results kept; the ones unused longest are dropped.
+    """
+
+    def __init__(self, size: int = 65_536) -> None:
+        self.size = size
+        self._results: OrderedDict[Hashable, Value | Grid] = OrderedDict()
+
+    def evaluate(self, function: Function, given: Sequence[Given]) -> Value | Grid:
+        """`evaluate`, from memory where the same arguments were asked before."""
+        key = (function.name, *(_key(item) for item in given))
+        found = self._results.get(key)
+        if found is None:
+            found = evaluate(function, given)
+            if not function.volatile:
+                self._results[key] = found
+                if len(self._results) > self.size:
+                    self._results.popitem(last=False)
+        else:
+            self._results.move_to_end(key)
+        return found
+
+
+def _key(item: Given) -> Hashable:
+    # True == 1.0 as a key, yet they are not the same argument.
+    if isinstance(item, list):
+        return tuple(tuple((v, True) if v is True or v is False else v for v in row) for row in item)
+    return (item, True) if item is True or item is False else item
