@@ -6,18 +6,21 @@ import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from fractions import Fraction
-from typing import Literal, Protocol
-
-import numpy as np
-from numpy.typing import NDArray
+from typing import TYPE_CHECKING, Literal, Protocol
 
 from xleq.errors import NotCertifiedError
 from xleq.units import P_STANDARD_BAR, R_L_BAR
+
+if TYPE_CHECKING:
+    import numpy as np
+    from numpy.typing import NDArray
 
 #: fluid: mixed in the one gas or solution; pure: a pure solid or liquid, activity 1 while present.
 Phase = Literal["fluid", "pure"]
 #: P: gas at T and P; V: gas at T and volume; C: solution of given volume; X: liquid on mole fractions.
 Kind = Literal["P", "V", "C", "X"]
+#: exhausted: a pure phase is used up or does not form; frozen: nothing can react; fluid vanished: condensed
+#: into pure phases; indeterminate: any extent would do, as for a pure decomposition at exactly P = K.
 Status = Literal["equilibrium", "exhausted", "frozen", "fluid vanished", "indeterminate"]
 
 
@@ -114,13 +117,16 @@ class Certificate:
     residuals : tuple [n_reactions] of float
         ln Q - ln K of each reaction; nan where a species of it is absent. [-]
     worst_balance : float
-        Largest relative departure of an element or charge balance. [-]
+        Largest relative departure of an element, charge or reaction balance. [-]
+    worst_error : float
+        Largest relative error of an amount that the residuals allow, to first order. [-]
     """
 
     ok: bool
     reason: str
     residuals: tuple[float, ...]
     worst_balance: float
+    worst_error: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -130,7 +136,7 @@ class Solution:
     Parameters
     ----------
     n : tuple [n_species] of float
-        Amounts at equilibrium. [mol]  Exactly 0 for a species that cannot form.
+        Amounts at equilibrium. [mol]  Exactly 0 for a species that cannot form, and for one below 1e-300 mol.
     xi : tuple [n_reactions] of float
         Extents; a least-norm choice where the reactions are dependent. [mol]
     status : Status
