@@ -1,0 +1,54 @@
+"""Shared strings: the texts that sheets refer to by number."""
+
+from __future__ import annotations
+
+from xleq.workbook.markup import bare, feed, new_parser, unescaped
+from xleq.workbook.package import Package
+
+
+class _Reader:
+    """Collects the text of each item: all its runs, without phonetic hints."""
+
+    def __init__(self) -> None:
+        self.strings: list[str] = []
+        self._runs: list[str] = []
+        self._text = ""
+        self._phonetic = 0
+
+    def start(self, name: str, _: dict[str, str]) -> None:
+        local = bare(name)
+        if local == "si":
+            self._runs = []
+        elif local == "rPh":
+            self._phonetic += 1
+        self._text = ""
+
+    def characters(self, text: str) -> None:
+        self._text += text
+
+    def end(self, name: str) -> None:
+        local = bare(name)
+        if local == "t":
+            if not self._phonetic:
+                self._runs.append(self._text)
+        elif local == "rPh":
+            self._phonetic -= 1
+        elif local == "si":
+            self.strings.append(unescaped("".join(self._runs)))
+
+
+def read_strings(package: Package, part: str) -> list[str]:
+    """Every shared string of a workbook, decoded, in its order.
+
+    Raises
+    ------
+    DamagedBookError
+        If the part is missing or not well-formed.
+    """
+    reader = _Reader()
+    parser = new_parser()
+    parser.StartElementHandler = reader.start
+    parser.EndElementHandler = reader.end
+    parser.CharacterDataHandler = reader.characters
+    feed(parser, part, package.chunks(part))
+    return reader.strings
