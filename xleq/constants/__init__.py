@@ -1,1 +1,5 @@
-"""Equilibrium constants: bases, scaling, summing, temperature."""
+"""Equilibrium constants: bases and their conversion, scale, reverse, sum, K(T) and fits. All in ln K."""
+
+from xleq.constants.cells import read_k, write_k
+
+__all__ = ["read_k", "write_k"]
