@@ -8,7 +8,7 @@ from dataclasses import dataclass, field
 from fractions import Fraction
 from typing import TYPE_CHECKING, Literal, Protocol
 
-from xleq.errors import NotCertifiedError
+from xleq.errors import InputError, NotCertifiedError, OutOfRangeError
 from xleq.units import P_STANDARD_BAR, R_L_BAR
 
 if TYPE_CHECKING:
@@ -22,6 +22,9 @@ Kind = Literal["P", "V", "C", "X"]
 #: exhausted: a pure phase is used up or does not form; frozen: nothing can react; fluid vanished: condensed
 #: into pure phases; indeterminate: any extent would do, as for a pure decomposition at exactly P = K.
 Status = Literal["equilibrium", "exhausted", "frozen", "fluid vanished", "indeterminate"]
+
+#: Amounts below this are given as 0: a double holds them no longer with its full precision. [mol]
+SMALLEST_AMOUNT = 1e-300
 
 
 @dataclass(frozen=True, slots=True)
@@ -115,7 +118,7 @@ class Certificate:
     reason : str
         What failed; empty when nothing did.
     residuals : tuple [n_reactions] of float
-        ln Q - ln K of each reaction; nan where a species of it is absent. [-]
+        ln Q - ln K of each reaction; nan where a fluid species of it is absent. [-]
     worst_balance : float
         Largest relative departure of an element, charge or reaction balance. [-]
     worst_error : float
@@ -171,3 +174,43 @@ class Solution:
         if not self.certificate.ok:
             raise NotCertifiedError(f"no certified equilibrium: {self.certificate.reason}")
         return self
+
+
+def check(problem: Problem) -> None:
+    """Refuse a problem whose records do not fit together or whose numbers mean nothing.
+
+    Parameters
+    ----------
+    problem : Problem
+
+    Raises
+    ------
+    InputError
+        If lengths differ, or an amount or a constant is not a finite number, or an amount is negative, or
+        nothing is fed.
+    OutOfRangeError
+        If the temperature, pressure or volume is not positive, or there is no fluid at all.
+    """
+    species, n0 = problem.species, problem.n0
+    width = len(species)
+    if len(n0) != width or len(problem.phases) != width or any(len(row) != width for row in problem.nu):
+        raise InputError("species, phases, feed and coefficients are not of the same length")
+    if not problem.nu or len(problem.ln_k) != len(problem.nu):
+        raise InputError(f"{len(problem.nu)} reactions with {len(problem.ln_k)} constants")
+    for name, amount in zip(species, n0, strict=True):
+        if not 0.0 <= amount < math.inf:
+            raise InputError(f"the feed of {name} is {amount}: it must be a number, at least 0")
+    for place, ln_k in enumerate(problem.ln_k, 1):
+        if not -math.inf < ln_k < math.inf:
+            raise InputError(f"ln K of reaction {place} is {ln_k}: it must be a finite number")
+    if not any(n0):
+        raise InputError("nothing is fed: every amount is 0")
+    if "fluid" not in problem.phases:
+        raise OutOfRangeError("there is no gas or solution: every species is a pure solid or liquid")
+    state = problem.state
+    if state.kind in "PV" and not 0.0 < state.t < math.inf:
+        raise OutOfRangeError(f"the temperature is {state.t} K: it must be above 0")
+    if state.kind == "P" and not 0.0 < state.p < math.inf:
+        raise OutOfRangeError(f"the pressure is {state.p} bar: it must be above 0")
+    if state.kind in "VC" and not 0.0 < state.v < math.inf:
+        raise OutOfRangeError(f"the volume is {state.v} L: it must be above 0")

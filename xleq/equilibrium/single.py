@@ -1,0 +1,314 @@
+"""One reaction in an ideal fluid, with or without pure phases.
+
+The extent is measured from the nearer of the two physical ends (where some species is used up), so that no
+amount is a difference of nearly equal numbers, and the distance d from it is found by Newton's method in
+ln d, kept inside a bracket. The affinity rises monotonically with d, so there is one root or none; with none,
+the answer is the end itself: a pure phase used up, or the fluid gone. What the amounts are at the ends is
+calculated in exact rationals where doubles would cancel, as with feeds near the stoichiometric ratio.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from fractions import Fraction
+from math import exp, log
+from typing import TYPE_CHECKING
+
+from xleq.equilibrium.certificate import certify
+from xleq.equilibrium.problem import SMALLEST_AMOUNT, Problem, Solution, Status, check
+from xleq.errors import InputError
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+#: Steps after which Newton's method is given up; bisection alone would need fewer than this.
+MAX_STEPS = 200
+METHOD = "bracketed Newton in the logarithm of the distance from the nearer end"
+_EPS = 2.220446049250313e-16
+
+
+@dataclass(frozen=True, slots=True)
+class End:
+    """One end of the range of the extent, seen from inside.
+
+    Parameters
+    ----------
+    sign : int
+        1 for the end where the reaction has run backward as far as it can, -1 for forward.
+    width : float
+        Extent from the feed to this end. [mol]  At least 0.
+    amounts : list [n_species] of float
+        Amounts at this end; exactly 0 for the species that set it. [mol]
+    """
+
+    sign: int
+    width: float
+    amounts: list[float]
+
+
+@dataclass(frozen=True, slots=True)
+class Affinity:
+    """Inward affinity near an end: sum of b ln(m + b d) over fluid species, less s B ln N, plus constants.
+
+    Parameters
+    ----------
+    power : float
+        Sum of b over the fluid species that are absent at the end: the slope at d -> 0 in ln d.
+    offset : float
+        Everything that does not depend on d.
+    terms : list of (m, b)
+        Fluid species that are present at the end and react.
+    rest : float
+        Fluid that does not react. [mol]
+    growth : float
+        B, moles of fluid made for each mole of d, times s; 0 where activities follow concentrations.
+    """
+
+    power: float
+    offset: float
+    terms: list[tuple[float, float]]
+    rest: float
+    growth: float
+
+    def at(self, u: float) -> tuple[float, float]:
+        """Value and slope with respect to u = ln d, at u."""
+        d = exp(u) if u > -745.0 else 0.0
+        value = self.offset + self.power * u
+        slope = 0.0
+        total = self.rest + self.power * d
+        for m, b in self.terms:
+            n = m + b * d
+            total += n
+            value += b * log(n)
+            slope += b * b / n
+        growth = self.growth
+        if growth:
+            value -= growth * log(total)
+            slope -= growth * growth / total
+        return value, self.power + slope * d
+
+    def scale(self) -> float:
+        """Size of the terms, which sets how far rounding lets the value be known."""
+        return abs(self.offset) + sum(abs(b * log(m)) for m, b in self.terms) + 50.0
+
+
+def solve(problem: Problem) -> Solution:
+    """The equilibrium of one reaction in an ideal fluid.
+
+    Parameters
+    ----------
+    problem : Problem
+        With one reaction, and without a model.
+
+    Returns
+    -------
+    Solution
+        With status "indeterminate" and a certificate that fails where any extent would do.
+
+    Raises
+    ------
+    InputError
+        If amounts, the constant or the state mean nothing, or the reaction lacks a reactant or a product.
+    """
+    check(problem)
+    nu = [c.numerator / c.denominator for c in problem.nu[0]]
+    back = end_of(problem, nu, 1)
+    ahead = end_of(problem, nu, -1)
+    span = back.width + ahead.width
+    if span == 0.0:
+        return _finish(problem, list(problem.n0), 0.0, "frozen", (), 0)
+    if not _varies(problem, nu, back, ahead):
+        return _all_or_nothing(problem, nu, back, ahead)
+    middle = log(0.5 * span)
+    end, affinity = back, affinity_from(problem, nu, back)
+    if affinity.at(middle)[0] < 0.0:
+        end, affinity = ahead, affinity_from(problem, nu, ahead)
+    start = _start(affinity, middle)
+    if start is None:
+        return _at_end(problem, nu, end)
+    u, steps = _root(affinity, start, middle)
+    d = exp(u) if u > -745.0 else 0.0
+    step = end.sign * d
+    amounts = [m + c * step for m, c in zip(end.amounts, nu, strict=True)]
+    return _finish(problem, amounts, end.sign * (d - end.width), "equilibrium", (), steps)
+
+
+def end_of(problem: Problem, nu: Sequence[float], sign: int) -> End:
+    """The end that the reaction reaches running backward (sign 1) or forward (-1).
+
+    Parameters
+    ----------
+    problem : Problem
+    nu : sequence [n_species] of float
+        Coefficients of the reaction.
+    sign : {1, -1}
+
+    Raises
+    ------
+    InputError
+        If nothing is consumed in that direction.
+    """
+    n0 = problem.n0
+    used = [i for i, c in enumerate(nu) if sign * c > 0.0]
+    if not used:
+        side = "product" if sign > 0 else "reactant"
+        raise InputError(f"the reaction has no {side}, so nothing limits how far it runs")
+    ratios = [n0[i] / abs(nu[i]) for i in used]
+    width = min(ratios)
+    amounts = [m - sign * c * width for m, c in zip(n0, nu, strict=True)]
+    if width == 0.0:
+        # A ratio can also be 0 because it underflows; only a feed of exactly 0 is an end.
+        return End(sign, 0.0, list(n0))
+    near = [i for i, ratio in zip(used, ratios, strict=True) if ratio <= width * (1.0 + 1e-12)]
+    first = near[0] if len(near) == 1 else _exact_first(problem, near)
+    width = n0[first] / abs(nu[first])
+    amounts[first] = 0.0
+    for i in used:
+        if i != first and amounts[i] < 0.03 * n0[i]:
+            amounts[i] = _exact_amount(problem, i, first)
+    return End(sign, width, amounts)
+
+
+def _exact_first(problem: Problem, candidates: list[int]) -> int:
+    """Which of the species is used up first, when doubles cannot tell."""
+    row = problem.nu[0]
+    return min(candidates, key=lambda i: Fraction(problem.n0[i]) / abs(row[i]))
+
+
+def _exact_amount(problem: Problem, i: int, first: int) -> float:
+    """What is left of species i when species `first` is used up, rounded once."""
+    row = problem.nu[0]
+    left = Fraction(problem.n0[i]) - Fraction(problem.n0[first]) * (row[i] / row[first])
+    return float(left)
+
+
+def _varies(problem: Problem, nu: Sequence[float], back: End, ahead: End) -> bool:
+    """Whether the affinity depends on the extent.
+
+    It does not where no fluid takes part, and where activities follow fractions and the whole fluid is made by
+    the reaction itself, so that it keeps one composition: then the fluid is gone at one of the ends.
+    """
+    fluid = [i for i, phase in enumerate(problem.phases) if phase == "fluid"]
+    if not any(nu[i] for i in fluid):
+        return False
+    if not problem.state.per_total:
+        return True
+    return any(back.amounts[i] for i in fluid) and any(ahead.amounts[i] for i in fluid)
+
+
+def affinity_from(problem: Problem, nu: Sequence[float], end: End) -> Affinity:
+    """The inward affinity seen from an end.
+
+    Parameters
+    ----------
+    problem : Problem
+    nu : sequence [n_species] of float
+    end : End
+    """
+    sign = end.sign
+    state = problem.state
+    growth = power = offset = rest = 0.0
+    terms: list[tuple[float, float]] = []
+    for m, c, phase in zip(end.amounts, nu, problem.phases, strict=True):
+        if phase != "fluid":
+            continue
+        if c == 0.0:
+            rest += m
+            continue
+        b = sign * c
+        growth += b
+        if m == 0.0:
+            power += b
+            offset += b * log(b)
+        else:
+            terms.append((m, b))
+    if growth:
+        offset += growth * state.shift
+        if not state.per_total:
+            growth = 0.0
+    return Affinity(power, offset - sign * problem.ln_k[0], terms, rest, growth)
+
+
+def _start(affinity: Affinity, middle: float) -> float | None:
+    """Where to begin, as ln d; None when the end itself is the answer."""
+    value = affinity.offset
+    slope = 0.0
+    total = affinity.rest
+    for m, b in affinity.terms:
+        value += b * log(m)
+        slope += b * b / m
+        total += m
+    growth = affinity.growth
+    if growth:
+        value -= growth * log(total)
+        slope -= growth * growth / total
+    if affinity.power:
+        return min(-value / affinity.power, middle)
+    if value >= 0.0:
+        return None
+    return min(log(-value) - log(slope), middle) if slope > 0.0 else middle
+
+
+def _root(affinity: Affinity, u: float, high: float) -> tuple[float, int]:
+    """The root in u = ln d, at most `high`, and the steps it took."""
+    low = -math.inf
+    floor = _EPS * affinity.scale()
+    at = affinity.at
+    for steps in range(1, MAX_STEPS):
+        value, slope = at(u)
+        if value > 0.0:
+            high = u
+        else:
+            low = u
+        move = -value / slope if slope > 0.0 else math.copysign(math.inf, -value)
+        if abs(move) < 1e-8:
+            return u + move, steps
+        if abs(value) < floor or high - low <= 4.0 * _EPS * abs(high):
+            return u, steps
+        u += move
+        if not low < u < high or (steps > 40 and steps % 2):
+            u = 0.5 * (low + high) if low > -math.inf else high - 4.0 * (1.0 + abs(high))
+    return u, MAX_STEPS
+
+
+def _at_end(problem: Problem, nu: Sequence[float], end: End) -> Solution:
+    """The solution at an end, where pure phases are used up."""
+    gone = tuple(
+        name
+        for name, n, c, phase in zip(problem.species, end.amounts, nu, problem.phases, strict=True)
+        if n == 0.0 and c and phase == "pure"
+    )
+    return _finish(problem, end.amounts, -end.sign * end.width, "exhausted", gone, 0)
+
+
+def _all_or_nothing(problem: Problem, nu: Sequence[float], back: End, ahead: End) -> Solution:
+    """The solution where the affinity is the same at every extent: one of the ends, unless it is zero."""
+    made = [c for c, phase in zip(nu, problem.phases, strict=True) if c and phase == "fluid"]
+    growth = sum(made)
+    terms = [growth * problem.state.shift, -problem.ln_k[0], *(c * log(c / growth) for c in made)]
+    value = math.fsum(terms)
+    if abs(value) <= 8.0 * _EPS * (1.0 + math.fsum(map(abs, terms))):
+        return _finish(problem, list(problem.n0), 0.0, "indeterminate", (), 0)
+    end = back if value > 0.0 else ahead
+    left = any(n for n, phase in zip(end.amounts, problem.phases, strict=True) if phase == "fluid")
+    if left or not made:
+        return _at_end(problem, nu, end)
+    return _finish(problem, end.amounts, -end.sign * end.width, "fluid vanished", (), 0)
+
+
+def _finish(
+    problem: Problem, amounts: list[float], xi: float, status: Status, gone: tuple[str, ...], steps: int
+) -> Solution:
+    """The record, certified; amounts too small for a double become 0 and are noted."""
+    notes: tuple[str, ...] = ()
+    if status == "equilibrium" and min(amounts) < SMALLEST_AMOUNT:
+        row = problem.nu[0]
+        small = [i for i, n in enumerate(amounts) if row[i] and n < SMALLEST_AMOUNT]
+        for i in small:
+            amounts[i] = 0.0
+        notes = tuple(f"{problem.species[i]} is below {SMALLEST_AMOUNT:g} mol, given as 0" for i in small)
+    elif status == "frozen":
+        notes = ("nothing can react: a species is missing on both sides",)
+    n = tuple(amounts)
+    return Solution(problem, n, (xi,), status, gone, certify(problem, n), steps, METHOD, notes)
