@@ -10,6 +10,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
+from functools import lru_cache
 from typing import Final
 from xml.parsers import expat
 
@@ -71,6 +72,7 @@ def is_true(text: str) -> bool:
     return text in {"1", "true", "on", "t"}
 
 
+@lru_cache(maxsize=1024)
 def bare(name: str) -> str:
     """Local name of an element of the main namespaces; other names unchanged.
 
@@ -167,12 +169,12 @@ def parse(data: bytes, part: str, depth: int) -> Node:
 
 
 def unescaped(text: str) -> str:
-    """Text with ``_xHHHH_`` turned into the characters they stand for.
+    r"""Text with ``_xHHHH_`` turned into the characters they stand for.
 
     Examples
     --------
     >>> unescaped("a_x000D_b"), unescaped("_x005F_x0041_")
-    ('a\\rb', '_x0041_')
+    ('a\rb', '_x0041_')
     """
     if "_x" not in text:
         return text
@@ -182,11 +184,11 @@ def unescaped(text: str) -> str:
 
 
 def escaped(text: str) -> str:
-    """Text as the content of an element: markup, forbidden characters and look-alikes escaped.
+    r"""Text as the content of an element: markup, forbidden characters and look-alikes escaped.
 
     Examples
     --------
-    >>> escaped("a<b&c\\r_x0041_")
+    >>> escaped("a<b&c\r_x0041_")
     'a&lt;b&amp;c_x000D__x005F_x0041_'
     """
     text = _TO_ESCAPE.sub(lambda match: f"_x{ord(match[0]):04X}_", text)

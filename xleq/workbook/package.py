@@ -73,7 +73,9 @@ class Package:
         except OSError as error:
             raise BookError(f"cannot be read: {error.strerror or error}") from error
         except _ZIP_ERRORS as error:
-            raise DamagedBookError(f"is not a readable zip archive, as a workbook must be: {error}") from error
+            raise DamagedBookError(
+                f"is not a readable zip archive, as a workbook must be: {error}"
+            ) from error
         try:
             self._by_key = self._checked_entries()
         except BookError:
@@ -146,7 +148,7 @@ class Package:
         """Whether there is such a member; case does not matter."""
         return key_of(part) in self._by_key
 
-    def keys(self) -> list[str]:
+    def member_keys(self) -> list[str]:
         """Member names in the form that `key_of` gives."""
         return list(self._by_key)
 

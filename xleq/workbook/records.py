@@ -10,6 +10,7 @@ in none of them is blank.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from enum import Enum
 from pathlib import Path
@@ -177,7 +178,7 @@ class Sheet:
         Those of them that lie in an active filter (SUBTOTAL 1 to 11 leaves these out too).
     hidden_columns : tuple of (int, int)
         First and last column of each hidden stretch.
-    formats : tuple of str
+    formats : sequence of str
         Number-format code of each cell format of the workbook, by style index.
     """
 
@@ -193,7 +194,7 @@ class Sheet:
     hidden_rows: frozenset[int] = frozenset()
     filtered_rows: frozenset[int] = frozenset()
     hidden_columns: tuple[tuple[int, int], ...] = ()
-    formats: tuple[str, ...] = ("General",)
+    formats: Sequence[str] = ("General",)
 
     def cell(self, row: int, column: int) -> Cell:
         """The cell at a place, blank when the file does not list it."""
