@@ -17,9 +17,9 @@ LN10: Final = math.log(10.0)
 _LOWEST: Final = math.log(sys.float_info.min)
 _HIGHEST: Final = math.log(sys.float_info.max)
 
-_NUMBER: Final = r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d{1,9})?"
+_NUMBER: Final = r"[+-]?(?:\d{1,300}(?:\.\d{0,300})?|\.\d{1,300})(?:[eE][+-]?\d{1,9})?"
 _LOGARITHM: Final = re.compile(rf"\s*(ln|log10)\s*(?:K\s*=)?\s*({_NUMBER})\s*", re.IGNORECASE)
-_PLAIN: Final = re.compile(r"\s*([+-]?)(\d+(?:\.\d*)?|\.\d+)(?:[eE]([+-]?\d{1,9}))?\s*")
+_PLAIN: Final = re.compile(r"\s*([+-]?)(\d{1,300}(?:\.\d{0,300})?|\.\d{1,300})(?:[eE]([+-]?\d{1,9}))?\s*")
 
 
 def read_k(value: float | str) -> float:

@@ -1,6 +1,6 @@
 """Chemical formulas without phase: elements, nested brackets, added parts such as hydrate water, charge.
 
-A charge is written `Ca+2`, `Ca2+`, `Ca^2+`, `Ca²⁺`, `Cl-`, `SO4-2`, `SO4^2-`, `SO4²⁻` or with the sign repeated.
+A charge is written `Ca+2`, `Ca2+`, `Ca^2+`, `Ca²⁺`, `Cl-`, `SO4-2`, `SO4^2-`, `SO4²⁻` or the sign repeated.
 A digit before a bare sign belongs to the charge after a single element or after `]`, else to the formula
 (`Ca2+` and `[Cu(NH3)4]2+`, but `NH4+`); where a chemist could read it both ways it is refused.
 """
@@ -13,7 +13,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 from functools import lru_cache
-from typing import Final
+from typing import Final, TypeAlias
 
 from xleq.errors import MissingDataError, ParseError
 from xleq.reactions.elements import atomic_weights, symbols
@@ -25,9 +25,10 @@ _PLAIN: Final = str.maketrans(
     {"−": "-", "–": "-", "•": "·", "∙": "·", "⋅": "·", "*": "·", "⁄": "/", "₊": "+", "₋": "-"}
 )
 _DIGITS: Final = str.maketrans(_SUBSCRIPTS + _SUPERSCRIPTS + "⁺⁻", "0123456789" * 2 + "+-")
+_SIGNS: Final = str.maketrans("⁺⁻", "+-")
 
 _CHARGES: Final = (
-    re.compile(rf"(?P<n>[{_SUPERSCRIPTS}]*)(?P<sign>[⁺⁻]+)"),
+    re.compile(rf"(?P<n>[{_SUPERSCRIPTS}]+)(?P<sign>[⁺⁻]+)"),
     re.compile(rf"(?P<sign>[⁺⁻])(?P<n>[{_SUPERSCRIPTS}]+)"),
     re.compile(r"\^(?P<n>\d{0,2})(?P<sign>[+-]+)"),
     re.compile(r"\^?(?P<sign>[+-])(?P<n>\d{1,2})"),
@@ -39,8 +40,10 @@ _INTEGER: Final = re.compile(r"\d{1,9}")
 _DECIMALS: Final = re.compile(r"\.\d{1,9}")
 _WATER: Final = re.compile(r"\.(?:\d{1,9}(?:\.\d{1,9}|/\d{1,9})?|[½¼¾⅓⅔])?[HD]2O(?![a-z\d])")
 _MULTIPLE: Final = re.compile(r"(\d{1,9}(?:\.\d{1,9})?)(?:/(\d{1,9}))?|([¼-¾⅐-⅞])")
+#: The bracket that closes a group, and the atoms read in it so far.
+_Open: TypeAlias = tuple[str, dict[str, Fraction]]
 _CLOSING: Final = {"(": ")", "[": "]"}
-#: Bare elements where `X2-` or `X2+` can mean a molecule's charge or an atom's; decided by nothing but context.
+#: Bare elements where `X2-` or `X2+` can mean a molecule's charge or an atom's; only context decides.
 _EITHER: Final = frozenset({"C", "N", "O", "P", "S", "Se", "Te"})
 #: Elements whose atoms carry at most one charge, so that a digit before the sign is a count: I3-, H2+.
 _COUNTS: Final = frozenset({"H", "D", "T", "F", "Cl", "Br", "I"})
@@ -119,9 +122,15 @@ def _charge(text: str, plain: str) -> tuple[int, int]:
         for match in pattern.finditer(plain, tail.start()):
             if match.end() == len(plain):
                 return match.start(), _signed(text, match)
-    match = _BARE_SIGN.search(plain)
-    if match is None:
+    plain = plain.translate(_SIGNS)
+    bare = _BARE_SIGN.search(plain)
+    if bare is None:
         raise ParseError(text, tail.start(), "a charge such as +, -2 or ^2+")
+    return _bare_charge(text, plain, bare)
+
+
+def _bare_charge(text: str, plain: str, match: re.Match[str]) -> tuple[int, int]:
+    """Where a charge without ^ begins whose sign stands last, and the charge."""
     if not match["n"]:
         return match.start(), _signed(text, match)
     head, n, sign = plain[: match.start()], match["n"], match["sign"]
@@ -153,7 +162,7 @@ def _signed(text: str, match: re.Match[str], counted: bool = False) -> int:
 def _elements(text: str, body: str) -> dict[str, Fraction]:
     """Atoms of each element; one stack of open brackets for each added part."""
     total: dict[str, Fraction] = {}
-    stack: list[tuple[str, dict[str, Fraction]]] = [("", {})]
+    stack: list[_Open] = [("", {})]
     multiple, i, known = Fraction(1), 0, symbols()
     while i < len(body):
         char = body[i]
@@ -191,9 +200,7 @@ def _add(into: dict[str, Fraction], part: Mapping[str, Fraction], times: Fractio
         into[element] = into[element] + times * count if element in into else times * count
 
 
-def _close(
-    text: str, i: int, stack: list[tuple[str, dict[str, Fraction]]], total: dict[str, Fraction], times: Fraction
-) -> None:
+def _close(text: str, i: int, stack: list[_Open], total: dict[str, Fraction], times: Fraction) -> None:
     """End one added part: nothing may be open, and something must have been read."""
     if len(stack) > 1:
         raise ParseError(text, i, _wanted(stack[-1][0]))
@@ -248,7 +255,7 @@ def vulgar_fraction(char: str) -> Fraction:
 
 
 def molar_mass(text: str) -> float:
-    """Molar mass of a formula. [g/mol]
+    """Molar mass of a formula [g/mol].
 
     The sum of the abridged standard atomic weights (Prohaska et al., Pure Appl. Chem. 94 (2022) 573); the
     mass of the electrons that an ion has lost or gained (0.00055 g/mol each) is not counted.
