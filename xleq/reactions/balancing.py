@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from fractions import Fraction
 
@@ -75,7 +76,18 @@ def _imbalance(reaction: Reaction, wrong: Sequence[str]) -> str:
         else:
             side, more = ("left", left - right) if left > right else ("right", right - left)
             clauses.append(f"{element} {left} on the left, {right} on the right ({more} more on the {side})")
-    return f"{reaction.text!r} does not balance: {'; '.join(clauses)}"
+    hint = _charge_hint(reaction) if "e" in wrong else ""
+    return f"{reaction.text!r} does not balance: {'; '.join(clauses)}{hint}"
+
+
+def _charge_hint(reaction: Reaction) -> str:
+    """FeSCN2+ is read as two N and one charge; its writer may have meant two charges."""
+    for species in reaction.species:
+        body = species.name.rstrip("^+-")
+        if abs(species.charge) == 1 and re.search(r"\D\d$", body):
+            spelt = f"{body[:-1]}^{body[-1]}{'+' if species.charge > 0 else '-'}"
+            return f"; if the {body[-1]} of {species.name} belongs to its charge, write {spelt}"
+    return ""
 
 
 def _signed(value: Fraction) -> str:

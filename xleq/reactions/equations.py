@@ -25,6 +25,7 @@ _COEFFICIENT: Final = re.compile(
 _SPECIES: Final = re.compile(r"\{[^{}]*\}|[^\s+{}]+")
 _CHARGE_NUMBER: Final = re.compile(r"\+(\d{1,2})(?![\d/⁄.])")
 _MOST_TERMS: Final = 200
+_ONE: Final = Fraction(1)
 
 
 class Term(NamedTuple):
@@ -101,9 +102,10 @@ def parse_reaction(text: str, default_phase: Phase | None = None) -> Reaction:
     left = _side(text, 0, start, default_phase)
     right = _side(text, end, len(text), default_phase)
     net: dict[Species, Fraction] = {}
-    for sign, terms in ((-1, left), (1, right)):
-        for coefficient, species in terms:
-            net[species] = net.get(species, Fraction(0)) + sign * coefficient
+    for coefficient, species in left:
+        net[species] = net[species] - coefficient if species in net else -coefficient
+    for coefficient, species in right:
+        net[species] = net[species] + coefficient if species in net else coefficient
     if not any(net.values()):
         raise InputError(f"{text!r}: both sides are the same, nothing reacts")
     return Reaction(tuple(net), tuple(net.values()), left, right, text)
@@ -168,7 +170,7 @@ def _term(text: str, i: int, end: int, default_phase: Phase | None) -> tuple[Ter
 def _coefficient(text: str, i: int, end: int) -> tuple[Fraction, int]:
     match = _COEFFICIENT.match(text, i, end)
     if match is None:
-        return Fraction(1), i
+        return _ONE, i
     if match["vulgar"]:
         value = int(match["whole"] or 0) + vulgar_fraction(match["vulgar"])
     elif match["decimal"]:

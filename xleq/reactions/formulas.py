@@ -35,6 +35,8 @@ _CHARGES: Final = (
 )
 _TAIL: Final = re.compile(r"[-+^⁺⁻⁰¹²³⁴⁵⁶⁷⁸⁹\d]+$")
 _BARE_SIGN: Final = re.compile(r"(?P<n>\d*)(?P<sign>[+-]+)$")
+_SIMPLE: Final = re.compile(r"(?:[A-Z][a-z]?\d{0,9})+")
+_PAIR: Final = re.compile(r"([A-Z][a-z]?)(\d*)")
 _ELEMENT: Final = re.compile(r"[A-Z][a-z]?")
 _INTEGER: Final = re.compile(r"\d{1,9}")
 _DECIMALS: Final = re.compile(r"\.\d{1,9}")
@@ -110,7 +112,12 @@ def parse_formula(text: str) -> Formula:
         if charge != -1:
             raise ParseError(text, end, "the charge of an electron, e-")
         return Formula("e", {}, -1)
-    return Formula(body, _elements(text, body), charge)
+    if _SIMPLE.fullmatch(body):
+        simple = _simple_elements(body)
+        if simple:
+            return Formula(body, simple, charge)
+    elements, body = _elements(text, body)
+    return Formula(body, elements, charge)
 
 
 def _charge(text: str, plain: str) -> tuple[int, int]:
@@ -159,8 +166,27 @@ def _signed(text: str, match: re.Match[str], counted: bool = False) -> int:
     return size if signs[0] == "+" else -size
 
 
-def _elements(text: str, body: str) -> dict[str, Fraction]:
-    """Atoms of each element; one stack of open brackets for each added part."""
+@lru_cache(maxsize=1024)
+def _whole(number: int) -> Fraction:
+    return Fraction(number)
+
+
+def _simple_elements(body: str) -> dict[str, Fraction] | None:
+    """Atoms of each element of a formula without brackets; None if it needs a closer look."""
+    atoms: dict[str, int] = {}
+    known = symbols()
+    for symbol, digits in _PAIR.findall(body):
+        number = int(digits or 1)
+        if symbol not in known or not number:
+            return None
+        atoms[symbol] = atoms.get(symbol, 0) + number
+    return {symbol: _whole(number) for symbol, number in atoms.items()}
+
+
+def _elements(text: str, body: str) -> tuple[dict[str, Fraction], str]:
+    """Atoms of each element, and the formula with its added parts in one spelling."""
+    parts: list[str] = []
+    begin = 0
     total: dict[str, Fraction] = {}
     stack: list[_Open] = [("", {})]
     multiple, i, known = Fraction(1), 0, symbols()
@@ -177,7 +203,9 @@ def _elements(text: str, body: str) -> dict[str, Fraction]:
             _add(stack[-1][1], inner, count)
         elif char in "·.":
             _close(text, i, stack, total, multiple)
+            parts.append(_part(multiple, body[begin:i]))
             multiple, i = _multiple(text, body, i + 1)
+            begin = i
         else:
             match = _ELEMENT.match(body, i)
             symbol = match[0] if match else ""
@@ -186,9 +214,14 @@ def _elements(text: str, body: str) -> dict[str, Fraction]:
             if symbol not in known or (match and symbol != match[0]):
                 raise ParseError(text, i, "the symbol of an element")
             count, i = _count(text, body, i + len(symbol))
-            _add(stack[-1][1], {symbol: Fraction(1)}, count)
+            _add(stack[-1][1], {symbol: _whole(1)}, count)
     _close(text, len(body), stack, total, multiple)
-    return total
+    parts.append(_part(multiple, body[begin:]))
+    return total, "·".join(parts)
+
+
+def _part(multiple: Fraction, formula: str) -> str:
+    return formula if multiple == 1 else f"{multiple}{formula}"
 
 
 def _wanted(closing: str) -> str:
@@ -214,7 +247,7 @@ def _count(text: str, body: str, i: int) -> tuple[Fraction, int]:
     """The subscript at i and where it ends; 1 where there is none."""
     match = _INTEGER.match(body, i)
     if match is None:
-        return Fraction(1), i
+        return _whole(1), i
     end = match.end()
     decimals = _DECIMALS.match(body, end)
     if decimals and (match[0] == "0" or not _WATER.match(body, end)):
@@ -234,7 +267,7 @@ def _multiple(text: str, body: str, i: int) -> tuple[Fraction, int]:
     """The number before an added part, as in ·5H2O, and where it ends."""
     match = _MULTIPLE.match(body, i)
     if match is None:
-        return Fraction(1), i
+        return _whole(1), i
     if match[3]:
         return vulgar_fraction(match[3]), match.end()
     denominator = int(match[2] or 1)
