@@ -1,7 +1,7 @@
 """Opening a workbook and writing fresh cached values into a copy that lost nothing else. No chemistry."""
 
 from xleq.workbook.limits import Limits
-from xleq.workbook.reading import open_book
+from xleq.workbook.reading.opening import open_book
 from xleq.workbook.records import (
     Area,
     Book,

@@ -57,7 +57,7 @@ class Package:
     ------
     BookError
         One of its classes, if the file is missing, not a readable archive, encrypted or over a limit.
-        Messages do not name the file: `xleq.workbook.reading.open_book` does, once.
+        Messages do not name the file: `xleq.workbook.reading.opening.open_book` does, once.
     """
 
     def __init__(self, path: Path, limits: Limits) -> None:

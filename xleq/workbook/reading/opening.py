@@ -9,12 +9,12 @@ from pathlib import Path
 
 from xleq.errors import BookError, DamagedBookError
 from xleq.workbook.limits import Limits
-from xleq.workbook.links import read_links
+from xleq.workbook.reading.links import read_links
 from xleq.workbook.markup import Node
 from xleq.workbook.package import Package, Relationship
-from xleq.workbook.parts import (
+from xleq.workbook.reading.metadata import Metadata, read_metadata
+from xleq.workbook.reading.parts import (
     read_calculation,
-    read_dynamic_marks,
     read_formats,
     read_names,
     read_table,
@@ -22,8 +22,8 @@ from xleq.workbook.parts import (
     uses_1904,
 )
 from xleq.workbook.records import Book, Sheet, SheetKind, Table
-from xleq.workbook.sheets import read_cells
-from xleq.workbook.strings import read_strings
+from xleq.workbook.reading.sheets import read_cells
+from xleq.workbook.reading.strings import read_strings
 
 _SIGNATURES = "_xmlsignatures/"
 
@@ -33,7 +33,7 @@ class _Shared:
     """What every sheet of a workbook is read with."""
 
     strings: list[str]
-    dynamic_marks: frozenset[int]
+    metadata: Metadata
     date_1904: bool
     text_may_be_error: bool
     limits: Limits
@@ -103,7 +103,7 @@ def _read(package: Package) -> Book:
     strings_part = _target(package, links, "sharedStrings")
     shared = _Shared(
         strings=read_strings(package, strings_part) if strings_part else [],
-        dynamic_marks=read_dynamic_marks(package, _target(package, links, "sheetMetadata")),
+        metadata=read_metadata(package, links),
         date_1904=uses_1904(workbook),
         # Other programs store an error as text; in Excel's own files text stays what it is.
         text_may_be_error="excel" not in application.casefold(),

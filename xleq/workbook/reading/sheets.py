@@ -26,6 +26,7 @@ from xleq.cells import (
 from xleq.errors import DamagedBookError, LimitError, ParseError
 from xleq.workbook.limits import Limits
 from xleq.workbook.markup import bare, feed, is_true, new_parser, unescaped
+from xleq.workbook.reading.metadata import Metadata
 from xleq.workbook.records import Area, DataTable, Formula, FormulaKind, Place, Sheet
 
 _DAY: Final = 86400.0
@@ -36,7 +37,7 @@ class Shared(Protocol):
     """What a sheet needs to know about its workbook."""
 
     strings: list[str]
-    dynamic_marks: frozenset[int]
+    metadata: Metadata
     date_1904: bool
     text_may_be_error: bool
     limits: Limits
@@ -121,6 +122,7 @@ class _Reader:
             "filterColumn": self._start_filter_column,
         }
         self._dynamic = False
+        self._rich = ""
 
     # What the parser calls
 
@@ -199,7 +201,8 @@ class _Reader:
         if style != "0":
             self.sheet.styles[self._row, self._column] = self._whole(style, 1 << 20, "style index", least=0)
         mark = attributes.get("cm")
-        self._dynamic = mark is not None and mark.isdigit() and int(mark) in self.shared.dynamic_marks
+        self._rich = attributes.get("vm", "")
+        self._dynamic = mark is not None and mark.isdigit() and int(mark) in self.shared.metadata.dynamic
         self._value = self._formula = None
         self._inline = []
 
@@ -265,7 +268,9 @@ class _Reader:
         if kind == "b":
             return is_true(text.strip())
         if kind == "e":
-            return error_named(text.strip())
+            errors = self.shared.metadata.errors
+            rich = errors.get(int(self._rich)) if errors and self._rich.isdecimal() else None
+            return rich or error_named(text.strip())
         if kind == "d":
             return serial_of(text.strip(), self.shared.date_1904)
         raise ValueError(kind)

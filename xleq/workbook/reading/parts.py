@@ -1,4 +1,4 @@
-"""Small parts of a workbook: settings, names, tables, number formats, dynamic-array marks.
+"""Small parts of a workbook: settings, names, tables, number formats.
 
 They are read from their XML, not through openpyxl's reader. That one refuses whole files for a wart in a
 part nobody asked about, does not know the strict namespaces and finds tables only when it loads all cells;
@@ -14,7 +14,7 @@ from xleq.errors import DamagedBookError, ParseError
 from xleq.workbook.markup import Node, unescaped
 from xleq.workbook.package import Package
 from xleq.workbook.records import Calculation, DefinedName, SheetKind, SheetState, Table
-from xleq.workbook.sheets import parse_area
+from xleq.workbook.reading.sheets import parse_area
 
 #: Built-in formats of East Asian dates (ECMA-376 part 1, 18.8.30); openpyxl leaves them out.
 _EAST_ASIAN_DATES = frozenset((*range(27, 37), *range(50, 59)))
@@ -148,31 +148,3 @@ def read_formats(package: Package, part: str | None) -> NumberFormats:
             custom[int(number)] = unescaped(node.get("formatCode"))
     ids = [node.get("numFmtId", "0") for node in styles.inside("cellXfs", "xf")]
     return NumberFormats([int(text) if text.isdecimal() else 0 for text in ids] or [0], custom)
-
-
-def read_dynamic_marks(package: Package, part: str | None) -> frozenset[int]:
-    """The `cm` numbers of cells that mean "dynamic array"."""
-    if part is None or not package.has(part):
-        return frozenset()
-    tree = package.tree(part)
-    kinds = [node.get("name") for node in tree.inside("metadataTypes", "metadataType")]
-    dynamic_blocks: set[int] = set()
-    for future in tree.all("futureMetadata"):
-        if future.get("name") == "XLDAPR":
-            for at, block in enumerate(future.all("bk")):
-                if any(node.flag("fDynamic") for node in _descendants(block)):
-                    dynamic_blocks.add(at)
-    marks = set()
-    for number, block in enumerate(tree.inside("cellMetadata", "bk"), 1):
-        for record in block.all("rc"):
-            kind, value = record.get("t"), record.get("v")
-            known = kind.isdecimal() and value.isdecimal() and 1 <= int(kind) <= len(kinds)
-            if known and kinds[int(kind) - 1] == "XLDAPR" and int(value) in dynamic_blocks:
-                marks.add(number)
-    return frozenset(marks)
-
-
-def _descendants(node: Node) -> Iterator[Node]:
-    for child in node.children:
-        yield child
-        yield from _descendants(child)
