@@ -27,7 +27,7 @@ def to_number(value: Value) -> float | CellError:
         return 1.0 if value else 0.0
     if kind is str:
         number = parse_number(value)  # type: ignore[arg-type]
-        return CellError("#VALUE!", f"{_short(value)} is not a number") if number is None else number
+        return CellError("#VALUE!", f"{_short(str(value))} is not a number") if number is None else number
     return 0.0
 
 
@@ -66,7 +66,7 @@ def to_logical(value: Value) -> bool | CellError:
         word = value.upper()  # type: ignore[union-attr]
         if word in ("TRUE", "FALSE"):
             return word == "TRUE"
-        return CellError("#VALUE!", f"{_short(value)} is neither TRUE nor FALSE")  # type: ignore[arg-type]
+        return CellError("#VALUE!", f"{_short(str(value))} is neither TRUE nor FALSE")
     return False
 
 

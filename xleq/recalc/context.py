@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from datetime import datetime
 from typing import Protocol
 
-from xleq.cells import VALUE
+from xleq.cells import VALUE, Missing
 from xleq.recalc.operands import Area, Array, Fail, Operand, Ref
 
 
@@ -67,7 +67,7 @@ class Context:
         self.column = column
         self.array_mode = array_mode
         #: Values of LET names and LAMBDA parameters in scope, innermost last.
-        self.locals: tuple[Operand, ...] = ()
+        self.locals: tuple[Operand | Missing, ...] = ()
         #: What is known against the cells that were read (`xleq.recalc.evaluate`).
         self.trust = 0
 

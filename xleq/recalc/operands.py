@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
-from dataclasses import dataclass
-from typing import TYPE_CHECKING, Final, TypeAlias
+from typing import TYPE_CHECKING, Final, NamedTuple, TypeAlias
 
 from xleq.cells import BLANK, CellError, Grid, Missing, Value
 
@@ -27,6 +26,9 @@ _KIND_OF: Final[dict[type, int]] = {
 }
 
 
+_NAN: Final = float("nan")
+
+
 class Fail(Exception):  # noqa: N818 - not a program error: it carries a cell error out of nested calls
     """Ends the evaluation of a function with an error value."""
 
@@ -45,36 +47,47 @@ class Array:
         The values row by row; `height * width` of them.
     """
 
-    __slots__ = ("_kinds", "_numbers", "flat", "height", "width")
+    __slots__ = ("_flat", "_index", "_kinds", "_numbers", "height", "width")
 
     def __init__(self, height: int, width: int, flat: Sequence[Value]) -> None:
         self.height = height
         self.width = width
-        self.flat = flat
+        self._flat: Sequence[Value] | None = flat
         self._numbers: NDArray[np.float64] | None = None
         self._kinds: NDArray[np.uint8] | None = None
+        self._index: dict[object, int] | None = None
 
     @classmethod
     def of_rows(cls, rows: Sequence[Sequence[Value]]) -> Array:
         """The array with these rows, all of one length."""
-        return cls(len(rows), len(rows[0]), [v for row in rows for v in row])
+        return Array(len(rows), len(rows[0]), [v for row in rows for v in row])
 
     @classmethod
     def column(cls, values: Iterable[Value]) -> Array:
         """One column."""
         flat = list(values)
-        return cls(len(flat), 1, flat)
+        return Array(len(flat), 1, flat)
 
     @classmethod
     def row(cls, values: Iterable[Value]) -> Array:
         """One row."""
         flat = list(values)
-        return cls(1, len(flat), flat)
+        return Array(1, len(flat), flat)
 
     @classmethod
     def filled(cls, height: int, width: int, value: Value) -> Array:
         """The same value everywhere."""
-        return cls(height, width, [value] * (height * width))
+        return Array(height, width, [value] * (height * width))
+
+    @property
+    def flat(self) -> Sequence[Value]:
+        """The values row by row."""
+        if self._flat is None:
+            self._flat = self._unpack()
+        return self._flat
+
+    def _unpack(self) -> Sequence[Value]:
+        raise AssertionError("an array without values")
 
     def at(self, row: int, column: int) -> Value:
         """The value at row and column, both from 0."""
@@ -104,14 +117,35 @@ class Array:
     def _split(self) -> None:
         import numpy as np
 
-        nan = float("nan")
+        flat = self.flat
         shape = (self.height, self.width)
-        self._kinds = np.array([_KIND_OF.get(type(v), BLANK_KIND) for v in self.flat], np.uint8).reshape(
-            shape
-        )
-        self._numbers = np.array([v if type(v) is float else nan for v in self.flat], np.float64).reshape(
-            shape
-        )
+        kind_of = _KIND_OF.get
+        self._kinds = np.array([kind_of(type(v), BLANK_KIND) for v in flat], np.uint8).reshape(shape)
+        self._numbers = np.array([v if type(v) is float else _NAN for v in flat], np.float64).reshape(shape)
+
+    def coerced(self) -> NDArray[np.float64]:
+        """float64 [height, width]: logicals as 1 and 0, blanks as 0; nan for texts and errors."""
+        import numpy as np
+
+        kinds = self.kinds
+        if (kinds == NUMBER_KIND).all():
+            return self.numbers
+        values = np.where(kinds == BLANK_KIND, 0.0, self.numbers)
+        logical = kinds == LOGICAL_KIND
+        if logical.any():
+            flat = self.flat
+            positions = np.flatnonzero(logical)
+            values.reshape(-1)[positions] = [float(bool(flat[i])) for i in positions]
+        return values
+
+    def index(self) -> dict[object, int]:
+        """Position, row by row, of the first value with each key; see `lookup_key`."""
+        if self._index is None:
+            found: dict[object, int] = {}
+            for position, value in enumerate(self.flat):
+                found.setdefault(lookup_key(value), position)
+            self._index = found
+        return self._index
 
     def first_error(self) -> CellError | None:
         """The first error value, row by row, if there is one."""
@@ -124,8 +158,62 @@ class Array:
         return f"Array({self.height}×{self.width}: {list(self.flat[:6])!r}…)"
 
 
-@dataclass(frozen=True, slots=True)
-class Area:
+def lookup_key(value: Value) -> object:
+    """Key under which exact lookups find a value: text without case, logicals apart from numbers.
+
+    Examples
+    --------
+    >>> lookup_key("Ab") == lookup_key("aB"), lookup_key(True) == lookup_key(1.0)
+    (True, False)
+    """
+    kind = type(value)
+    if kind is str:
+        return value.lower()  # type: ignore[union-attr]
+    if kind is bool:
+        return (value,)
+    return value
+
+
+class Computed(Array):
+    """An array of numbers, or of logicals, held by numpy alone until its values are asked for.
+
+    Parameters
+    ----------
+    data : array [height, width]
+        float64, finite; or bool.
+    """
+
+    __slots__ = ("_data",)
+
+    def __init__(self, data: NDArray[np.float64] | NDArray[np.bool_]) -> None:
+        self.height, self.width = data.shape
+        self._data = data
+        self._flat = None
+        self._numbers = None
+        self._kinds = None
+        self._index = None
+
+    def _unpack(self) -> Sequence[Value]:
+        return self._data.ravel().tolist()  # type: ignore[no-any-return]
+
+    def _split(self) -> None:
+        import numpy as np
+
+        if self._data.dtype == np.bool_:
+            self._kinds = np.full(self._data.shape, LOGICAL_KIND, np.uint8)
+            self._numbers = np.full(self._data.shape, _NAN)
+        else:
+            self._kinds = np.full(self._data.shape, NUMBER_KIND, np.uint8)
+            self._numbers = self._data.astype(np.float64, copy=False)
+
+    def coerced(self) -> NDArray[np.float64]:
+        """float64 [height, width]: logicals as 1 and 0."""
+        import numpy as np
+
+        return self._data.astype(np.float64, copy=False)
+
+
+class Area(NamedTuple):
     """A rectangle of cells on one sheet; rows and columns count from 1, ends included."""
 
     sheet: int
@@ -135,8 +223,7 @@ class Area:
     right: int
 
 
-@dataclass(frozen=True, slots=True)
-class Ref:
+class Ref(NamedTuple):
     """A reference: one area, or several (a union, or the same area on several sheets)."""
 
     areas: tuple[Area, ...]

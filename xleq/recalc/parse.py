@@ -34,7 +34,8 @@ _TOKEN = re.compile(
     (?P<blank>[ \t\r\n\xa0]+)
   | (?P<text>"(?:[^"]|"")*")
   | (?P<error>{_ERROR_CODES})
-  | (?P<place>'(?:[^']|'')+'!|(?:\[[^\[\]]+\])?[^\W\d]?[\w.]*(?::[\w.]+)?!(?!=)|\[[^\[\]]+\]!)
+  | (?P<place>'(?:[^']|'')+'!|(?:\[[^\[\]]+\])?[\w.]*!|
+      (?:\[[^\[\]]+\])?(?!\$?[A-Z]{{1,3}}\$?[0-9]+:)[^\W\d][\w.]*:[\w.]+!|\[[^\[\]]+\]!)
   | (?P<rows>\$?[0-9]{{1,7}}:\$?[0-9]{{1,7}}(?![\w.]))
   | (?P<number>(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[Ee][+-]?[0-9]+)?)
   | (?P<columns>\$?[A-Za-z]{{1,3}}:\$?[A-Za-z]{{1,3}}(?![\w.($!\[]))
@@ -383,11 +384,11 @@ def read_place(text: str) -> Place:
 
 
 def relative_key(text: str, row: int, column: int) -> str:
-    """Text with its relative references as distances from a cell: equal texts have equal trees.
+    r"""Text with its relative references as distances from a cell: equal texts have equal trees.
 
     Examples
     --------
-    >>> relative_key("A1+$B$2&\\"A1\\"", 1, 1) == relative_key("B2+$B$2&\\"A1\\"", 2, 2)
+    >>> relative_key("A1+$B$2&\"A1\"", 1, 1) == relative_key("B2+$B$2&\"A1\"", 2, 2)
     True
     >>> relative_key("SUM(A:A)", 1, 2) == relative_key("SUM(A:A)", 1, 3)
     False
