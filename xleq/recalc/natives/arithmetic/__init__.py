@@ -1,0 +1,1 @@
+"""Numbers: rounding, powers, counting, numerals, angles, sums, matrices, chance."""

@@ -1,0 +1,1 @@
+"""Statistics: averages, spread, ranks, regression, criteria, distributions and tests."""
