@@ -88,7 +88,9 @@ def check_size(n_species: int, n_reactions: int) -> None:
     if n_species > MAX_SPECIES:
         raise OutOfRangeError(f"{n_species} species are too many; at most {MAX_SPECIES} are solved at once")
     if n_reactions > MAX_REACTIONS:
-        raise OutOfRangeError(f"{n_reactions} reactions are too many; at most {MAX_REACTIONS} are solved at once")
+        raise OutOfRangeError(
+            f"{n_reactions} reactions are too many; at most {MAX_REACTIONS} are solved at once"
+        )
 
 
 @lru_cache(maxsize=256)
@@ -197,7 +199,9 @@ def check_dependent(s: Structure, ln_k: Sequence[float]) -> tuple[tuple[float, .
         implied = math.fsum(terms)
         scale = max(1.0, abs(ln_k[r]), *(abs(x) for x in terms)) if terms else 1.0
         gap = ln_k[r] - implied
-        made_of = " ".join(f"{'+' if x > 0 else '-'} {_times(abs(x))}({i + 1})" for i, x in enumerate(share) if x)
+        made_of = " ".join(
+            f"{'+' if x > 0 else '-'} {_times(abs(x))}({i + 1})" for i, x in enumerate(share) if x
+        )
         if abs(gap) > LN_K_AGREEMENT * scale:
             raise AmbiguousError(
                 f"reaction {r + 1} is the combination {made_of or 'of none'} of the others, which give it "
@@ -205,7 +209,9 @@ def check_dependent(s: Structure, ln_k: Sequence[float]) -> tuple[tuple[float, .
                 "correct one constant or leave the reaction out"
             )
         consistent[r] = implied
-        notes.append(f"reaction {r + 1} depends on the others ({made_of}); its ln K agrees within {abs(gap):.1g}")
+        notes.append(
+            f"reaction {r + 1} depends on the others ({made_of}); its ln K agrees within {abs(gap):.1g}"
+        )
     return tuple(consistent), tuple(notes)
 
 
