@@ -18,7 +18,8 @@ def exact_digits(x: float) -> Decimal:
     return Decimal(f"{x:.14e}")
 
 
-def _rounded(x: Decimal, places: int) -> Decimal:
+def rounded(x: Decimal, places: int) -> Decimal:
+    """Rounded half away from zero; negative `places` round before the point."""
     return x.quantize(Decimal(1).scaleb(-places), context=_WIDE)
 
 
@@ -37,9 +38,9 @@ def general_text(x: float) -> str:
         return "0"
     exponent = d.adjusted()
     if exponent <= 10:
-        plain = _rounded(d, min(9, 10 - exponent - 1) if exponent > 0 else 9)
+        plain = rounded(d, min(9, 10 - exponent - 1) if exponent > 0 else 9)
         if exponent == 10:
-            plain = _rounded(d, 0)
+            plain = rounded(d, 0)
         exact = plain == d
         if plain.adjusted() <= 10 and (exponent >= -4 or exact):
             text = f"{plain:f}"
@@ -62,7 +63,7 @@ def _decimal(d: Decimal, tokens: tuple[Token, ...]) -> tuple[str, bool]:
     whole, fraction, thousands, scale = _laid_out(tokens)
     percents = sum(t.kind == "percent" for t in tokens)
     places = sum(t.kind == "digit" for t in fraction or ())
-    d = _rounded(d.scaleb(2 * percents - 3 * scale, context=_WIDE), places)
+    d = rounded(d.scaleb(2 * percents - 3 * scale, context=_WIDE), places)
     digits, _, decimals = f"{d:f}".partition(".")
     text = _whole_text(digits.lstrip("0"), whole, thousands, fraction is not None)
     if fraction is not None:
@@ -143,12 +144,12 @@ def _scientific(d: Decimal, tokens: tuple[Token, ...]) -> tuple[str, bool]:
     d = d.scaleb(2 * percents, context=_WIDE)
     if d:
         power = _power(d.adjusted(), step)
-        shown = _rounded(d.scaleb(-power, context=_WIDE), places)
+        shown = rounded(d.scaleb(-power, context=_WIDE), places)
         if _power(shown.adjusted() + power, step) != power:
             power = _power(shown.adjusted() + power, step)
-            shown = _rounded(d.scaleb(-power, context=_WIDE), places)
+            shown = rounded(d.scaleb(-power, context=_WIDE), places)
     else:
-        shown = _rounded(d, places)
+        shown = rounded(d, places)
     digits, _, decimals = f"{shown:f}".partition(".")
     text = _whole_text(digits.lstrip("0"), whole, thousands, fraction is not None)
     if fraction is not None:

@@ -1,0 +1,1 @@
+"""Text: joining, cutting, searching, characters, and numbers in text."""

@@ -1,0 +1,41 @@
+"""Wildcards of the spreadsheet: ``?`` one character, ``*`` any number, ``~`` takes the next one literally."""
+
+from __future__ import annotations
+
+import re
+from functools import lru_cache
+
+
+def has_wildcard(text: str) -> bool:
+    """Whether a text means something else than itself as a pattern.
+
+    Examples
+    --------
+    >>> has_wildcard("N*"), has_wildcard("what~?"), has_wildcard("NH3")
+    (True, True, False)
+    """
+    return "*" in text or "?" in text or "~" in text
+
+
+@lru_cache(maxsize=1024)
+def wildcard_pattern(text: str) -> re.Pattern[str]:
+    """Regular expression of a text with wildcards, without case.
+
+    Examples
+    --------
+    >>> bool(wildcard_pattern("n?3").fullmatch("NH3")), bool(wildcard_pattern("~*").fullmatch("a"))
+    (True, False)
+    """
+    parts: list[str] = []
+    at = 0
+    while at < len(text):
+        c = text[at]
+        if c == "~" and at + 1 < len(text) and text[at + 1] in "*?~":
+            at += 1
+            parts.append(re.escape(text[at]))
+        else:
+            parts.append({"*": ".*", "?": "."}.get(c) or re.escape(c))
+        at += 1
+    # Runs of stars mean the same as one and would only cost time.
+    joined = re.sub(r"(?:\.\*)+", ".*", "".join(parts))
+    return re.compile(joined, re.IGNORECASE | re.DOTALL)
