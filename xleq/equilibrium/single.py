@@ -28,7 +28,7 @@ METHOD = "bracketed Newton in the logarithm of the distance from the nearer end"
 _EPS = 2.220446049250313e-16
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True)
 class End:
     """One end of the range of the extent, seen from inside.
 
@@ -47,7 +47,32 @@ class End:
     amounts: list[float]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(slots=True)
+class Fluid:
+    """The reaction in its fluid.
+
+    Parameters
+    ----------
+    reacting : list of (index, coefficient)
+        Fluid species that take part.
+    rest : float
+        Fluid that does not. [mol]
+    growth : float
+        Moles of fluid made for each mole of extent.
+    by_fraction : bool
+        Whether activities follow fractions, not concentrations.
+    constant : float
+        What ln Q - ln K has besides the logarithms of amounts.
+    """
+
+    reacting: list[tuple[int, float]]
+    rest: float
+    growth: float
+    by_fraction: bool
+    constant: float
+
+
+@dataclass(slots=True)
 class Affinity:
     """Inward affinity near an end: sum of b ln(m + b d) over fluid species, less s B ln N, plus constants.
 
@@ -118,12 +143,13 @@ def solve(problem: Problem) -> Solution:
     span = back.width + ahead.width
     if span == 0.0:
         return _finish(problem, list(problem.n0), 0.0, "frozen", (), 0)
-    if not _varies(problem, nu, back, ahead):
-        return _all_or_nothing(problem, nu, back, ahead)
-    middle = log(0.5 * span)
-    end, affinity = back, affinity_from(problem, nu, back)
-    if affinity.at(middle)[0] < 0.0:
-        end, affinity = ahead, affinity_from(problem, nu, ahead)
+    fluid = fluid_of(problem, nu)
+    if not _varies(fluid, back, ahead):
+        return _all_or_nothing(problem, fluid, nu, back, ahead)
+    half = 0.5 * span
+    end = back if _inward_at(fluid, back, half) >= 0.0 else ahead
+    affinity = affinity_from(fluid, end)
+    middle = log(half)
     start = _start(affinity, middle)
     if start is None:
         return _at_end(problem, nu, end)
@@ -132,6 +158,30 @@ def solve(problem: Problem) -> Solution:
     step = end.sign * d
     amounts = [m + c * step for m, c in zip(end.amounts, nu, strict=True)]
     return _finish(problem, amounts, end.sign * (d - end.width), "equilibrium", (), steps)
+
+
+def fluid_of(problem: Problem, nu: Sequence[float]) -> Fluid:
+    """What of the problem concerns its fluid.
+
+    Parameters
+    ----------
+    problem : Problem
+    nu : sequence [n_species] of float
+        Coefficients of the reaction.
+    """
+    reacting: list[tuple[int, float]] = []
+    rest = growth = 0.0
+    for i, phase in enumerate(problem.phases):
+        if phase == "fluid":
+            c = nu[i]
+            if c:
+                reacting.append((i, c))
+                growth += c
+            else:
+                rest += problem.n0[i]
+    state = problem.state
+    constant = growth * state.shift - problem.ln_k[0]
+    return Fluid(reacting, rest, growth, state.kind in "PX", constant)
 
 
 def end_of(problem: Problem, nu: Sequence[float], sign: int) -> End:
@@ -150,84 +200,99 @@ def end_of(problem: Problem, nu: Sequence[float], sign: int) -> End:
         If nothing is consumed in that direction.
     """
     n0 = problem.n0
-    used = [i for i, c in enumerate(nu) if sign * c > 0.0]
+    width, first = math.inf, -1
+    used: list[int] = []
+    for i, c in enumerate(nu):
+        if sign * c > 0.0:
+            used.append(i)
+            ratio = n0[i] / abs(c)
+            if ratio < width:
+                width, first = ratio, i
     if not used:
         side = "product" if sign > 0 else "reactant"
         raise InputError(f"the reaction has no {side}, so nothing limits how far it runs")
-    ratios = [n0[i] / abs(nu[i]) for i in used]
-    width = min(ratios)
-    amounts = [m - sign * c * width for m, c in zip(n0, nu, strict=True)]
     if width == 0.0:
-        # A ratio can also be 0 because it underflows; only a feed of exactly 0 is an end.
         return End(sign, 0.0, list(n0))
-    near = [i for i, ratio in zip(used, ratios, strict=True) if ratio <= width * (1.0 + 1e-12)]
-    first = near[0] if len(near) == 1 else _exact_first(problem, near)
-    width = n0[first] / abs(nu[first])
+    amounts = [m - sign * c * width for m, c in zip(n0, nu, strict=True)]
+    if len(used) > 1:
+        first = _exact_first(problem, nu, used, width, first)
+        width = n0[first] / abs(nu[first])
+        for i in used:
+            if amounts[i] < 0.03 * n0[i]:
+                amounts[i] = _exact_amount(problem, i, first)
     amounts[first] = 0.0
-    for i in used:
-        if i != first and amounts[i] < 0.03 * n0[i]:
-            amounts[i] = _exact_amount(problem, i, first)
     return End(sign, width, amounts)
 
 
-def _exact_first(problem: Problem, candidates: list[int]) -> int:
-    """Which of the species is used up first, when doubles cannot tell."""
+def _exact_first(problem: Problem, nu: Sequence[float], used: list[int], width: float, first: int) -> int:
+    """Which of the species is used up first, by exact comparison where doubles cannot tell."""
+    most = width * (1.0 + 1e-12)
+    near = [i for i in used if problem.n0[i] <= most * abs(nu[i])]
+    if len(near) < 2:
+        return first
     row = problem.nu[0]
-    return min(candidates, key=lambda i: Fraction(problem.n0[i]) / abs(row[i]))
+    return min(near, key=lambda i: Fraction(problem.n0[i]) / abs(row[i]))
 
 
 def _exact_amount(problem: Problem, i: int, first: int) -> float:
     """What is left of species i when species `first` is used up, rounded once."""
-    row = problem.nu[0]
-    left = Fraction(problem.n0[i]) - Fraction(problem.n0[first]) * (row[i] / row[first])
-    return float(left)
+    if problem.n0[i] == 0.0:
+        return 0.0
+    ratio = problem.nu[0][i] / problem.nu[0][first]
+    up, down = ratio.numerator, ratio.denominator
+    a, b = problem.n0[i].as_integer_ratio()
+    c, d = problem.n0[first].as_integer_ratio()
+    return (a * d * down - c * b * up) / (b * d * down)
 
 
-def _varies(problem: Problem, nu: Sequence[float], back: End, ahead: End) -> bool:
+def _varies(fluid: Fluid, back: End, ahead: End) -> bool:
     """Whether the affinity depends on the extent.
 
-    It does not where no fluid takes part, and where activities follow fractions and the whole fluid is made by
-    the reaction itself, so that it keeps one composition: then the fluid is gone at one of the ends.
+    It does not where no fluid takes part, and where activities follow fractions and the reaction makes all of
+    the fluid, so that it keeps one composition: then the fluid is gone at one of the ends.
     """
-    fluid = [i for i, phase in enumerate(problem.phases) if phase == "fluid"]
-    if not any(nu[i] for i in fluid):
+    if not fluid.reacting:
         return False
-    if not problem.state.per_total:
+    if fluid.rest or not fluid.by_fraction:
         return True
-    return any(back.amounts[i] for i in fluid) and any(ahead.amounts[i] for i in fluid)
+    at_back = any(back.amounts[i] for i, _ in fluid.reacting)
+    return at_back and any(ahead.amounts[i] for i, _ in fluid.reacting)
 
 
-def affinity_from(problem: Problem, nu: Sequence[float], end: End) -> Affinity:
+def _inward_at(fluid: Fluid, back: End, d: float) -> float:
+    """Ln Q - ln K at the distance d from the backward end."""
+    value = fluid.constant
+    total = fluid.rest
+    for i, c in fluid.reacting:
+        n = back.amounts[i] + c * d
+        total += n
+        value += c * log(n)
+    if fluid.by_fraction and fluid.growth:
+        value -= fluid.growth * log(total)
+    return value
+
+
+def affinity_from(fluid: Fluid, end: End) -> Affinity:
     """The inward affinity seen from an end.
 
     Parameters
     ----------
-    problem : Problem
-    nu : sequence [n_species] of float
+    fluid : Fluid
     end : End
     """
-    sign = end.sign
-    state = problem.state
-    growth = power = offset = rest = 0.0
+    sign, amounts = end.sign, end.amounts
+    power = 0.0
+    offset = sign * fluid.constant
     terms: list[tuple[float, float]] = []
-    for m, c, phase in zip(end.amounts, nu, problem.phases, strict=True):
-        if phase != "fluid":
-            continue
-        if c == 0.0:
-            rest += m
-            continue
+    for i, c in fluid.reacting:
+        m = amounts[i]
         b = sign * c
-        growth += b
         if m == 0.0:
             power += b
             offset += b * log(b)
         else:
             terms.append((m, b))
-    if growth:
-        offset += growth * state.shift
-        if not state.per_total:
-            growth = 0.0
-    return Affinity(power, offset - sign * problem.ln_k[0], terms, rest, growth)
+    return Affinity(power, offset, terms, fluid.rest, sign * fluid.growth if fluid.by_fraction else 0.0)
 
 
 def _start(affinity: Affinity, middle: float) -> float | None:
@@ -282,11 +347,10 @@ def _at_end(problem: Problem, nu: Sequence[float], end: End) -> Solution:
     return _finish(problem, end.amounts, -end.sign * end.width, "exhausted", gone, 0)
 
 
-def _all_or_nothing(problem: Problem, nu: Sequence[float], back: End, ahead: End) -> Solution:
+def _all_or_nothing(problem: Problem, fluid: Fluid, nu: Sequence[float], back: End, ahead: End) -> Solution:
     """The solution where the affinity is the same at every extent: one of the ends, unless it is zero."""
-    made = [c for c, phase in zip(nu, problem.phases, strict=True) if c and phase == "fluid"]
-    growth = sum(made)
-    terms = [growth * problem.state.shift, -problem.ln_k[0], *(c * log(c / growth) for c in made)]
+    made = [c for _, c in fluid.reacting]
+    terms = [fluid.growth * problem.state.shift, -problem.ln_k[0], *(c * log(c / fluid.growth) for c in made)]
     value = math.fsum(terms)
     if abs(value) <= 8.0 * _EPS * (1.0 + math.fsum(map(abs, terms))):
         return _finish(problem, list(problem.n0), 0.0, "indeterminate", (), 0)

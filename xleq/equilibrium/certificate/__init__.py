@@ -10,6 +10,7 @@ rounding makes of the amounts and constants as given.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 
 from xleq.equilibrium.certificate.elements import element_imbalance
@@ -44,10 +45,10 @@ def certify(problem: Problem, n: Sequence[float]) -> Certificate:
     >>> certify(problem, (0.6, 0.4)).reason
     'A + ... is not at equilibrium: ln Q - ln K = -0.405'
     """
-    missing = len(problem.ln_k)
-    for name, amount in zip(problem.species, n, strict=True):
-        if not 0.0 <= amount < float("inf"):
-            return Certificate(False, f"the amount of {name} is {amount}", (float("nan"),) * missing, 0.0)
+    for i, amount in enumerate(n):
+        if not 0.0 <= amount < math.inf:
+            reason = f"the amount of {problem.species[i]} is {amount}"
+            return Certificate(False, reason, (math.nan,) * len(problem.ln_k), math.nan, math.nan)
     verdict = _verdict(problem, n)
     reason, balance = verdict.reason, verdict.balance
     if problem.formulas is not None:

@@ -41,7 +41,7 @@ def certify_one(problem: Problem, n: Sequence[float]) -> Verdict:
 
 
 def _balance(problem: Problem, nu: Sequence[float], n: Sequence[float]) -> tuple[str, float]:
-    """Whether one extent takes the feed to the amounts, each amount being good to BALANCE_TOLERANCE of itself.
+    """Whether one extent takes the feed to the amounts, each good to BALANCE_TOLERANCE of itself.
 
     The species with the least left fixes the extent most sharply; every other species is held against it.
     """
@@ -125,13 +125,16 @@ def _reach(problem: Problem, nu: Sequence[float], n: Sequence[float], mean: floa
     d ln Q / d xi is summed as squares about its mean, so that it does not cancel, in units of the largest
     relative change |nu| / n, so that it does not overflow.
     """
-    share = max(abs(c) / amount for amount, c in zip(n, nu, strict=True) if c)
+    share = max([abs(c) / amount for amount, c in zip(n, nu, strict=True) if c])
     stiffness = noise = 0.0
+    against = mean / share
     for amount, c, phase in zip(n, nu, problem.phases, strict=True):
         if phase == "fluid" and amount:
-            pull, against = c / amount / share, mean / share
-            stiffness += amount * (pull - against) ** 2
-            noise += amount * (abs(pull) + abs(against)) ** 2
+            pull = c / amount / share
+            net = pull - against
+            gross = abs(pull) + abs(against)
+            stiffness += amount * net * net
+            noise += amount * gross * gross
     if stiffness <= 4.0 * ROUNDING * ROUNDING * noise:
         return math.inf
     return 1.0 / (share * stiffness)
