@@ -214,3 +214,68 @@ def check(problem: Problem) -> None:
         raise OutOfRangeError(f"the pressure is {state.p} bar: it must be above 0")
     if state.kind in "VC" and not 0.0 < state.v < math.inf:
         raise OutOfRangeError(f"the volume is {state.v} L: it must be above 0")
+
+
+@dataclass(frozen=True, slots=True)
+class Batch:
+    """Many instances of one system: the same species and reactions, each with its own numbers.
+
+    Parameters
+    ----------
+    species, phases, nu, formulas
+        As in `Problem`.
+    n0 : array [n_instances, n_species]
+        Amounts fed. [mol]
+    ln_k : array [n_instances, n_reactions]
+        ln K°. [-]
+    kind : {"P", "V", "C", "X"}
+    t, p, v : array [n_instances]
+        Temperature [K], pressure [bar], volume [L]; nan, or 1 for the volume, where the kind has none.
+    """
+
+    species: tuple[str, ...]
+    phases: tuple[Phase, ...]
+    nu: tuple[tuple[Fraction, ...], ...]
+    n0: NDArray[np.float64]
+    ln_k: NDArray[np.float64]
+    kind: Kind
+    t: NDArray[np.float64]
+    p: NDArray[np.float64]
+    v: NDArray[np.float64]
+    formulas: tuple[Mapping[str, Fraction] | None, ...] | None = None
+
+    def __len__(self) -> int:
+        return len(self.n0)
+
+    def problem(self, i: int) -> Problem:
+        """The instance of that place as a problem of its own."""
+        state = State(self.kind, float(self.t[i]), float(self.p[i]), float(self.v[i]))
+        n0, ln_k = tuple(self.n0[i].tolist()), tuple(self.ln_k[i].tolist())
+        return Problem(self.species, self.phases, self.nu, n0, ln_k, state, self.formulas)
+
+
+@dataclass(frozen=True, slots=True)
+class BatchSolution:
+    """The equilibria of a batch.
+
+    Parameters
+    ----------
+    n : array [n_instances, n_species]
+        Amounts at equilibrium; nan in the rows that are not certified. [mol]
+    xi : array [n_instances, n_reactions]
+        Extents; nan in the rows that are not certified. [mol]
+    ok : array [n_instances] of bool
+        Whether the certificate of each holds.
+    reasons : tuple [n_instances] of str
+        Why an instance has no answer; empty where it has one.
+    status : tuple [n_instances] of Status or ""
+        Empty where the instance was refused as input.
+    iterations : array [n_instances] of int
+    """
+
+    n: NDArray[np.float64]
+    xi: NDArray[np.float64]
+    ok: NDArray[np.bool_]
+    reasons: tuple[str, ...]
+    status: tuple[Status | Literal[""], ...]
+    iterations: NDArray[np.int_]

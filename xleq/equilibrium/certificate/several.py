@@ -46,7 +46,8 @@ def certify_several(problem: Problem, n: Sequence[float]) -> Verdict:
     rows = _rows(e, ln_a, size, whole_ln_k)
     reason, balance = _balance(problem, e, amounts)
     present = amounts[rows.pivots] > 0.0
-    residuals = _residuals(problem, amounts, fluid, ln_a)
+    nu = np.asarray(s.whole, dtype=float) / np.array(s.scales)[:, None]
+    residuals = _residuals(nu, np.array(problem.ln_k), fluid & (amounts == 0.0), ln_a)
     if reason:
         return Verdict(reason, residuals, balance, math.nan)
     reason, error = _at_equilibrium(problem, rows, present, amounts, fluid)
@@ -184,13 +185,9 @@ def _reach(problem: Problem, nu: Floats, amounts: Floats, fluid: NDArray[np.bool
     return reach
 
 
-def _residuals(
-    problem: Problem, amounts: Floats, fluid: NDArray[np.bool_], ln_a: Floats
-) -> tuple[float, ...]:
+def _residuals(nu: Floats, ln_k: Floats, missing: NDArray[np.bool_], ln_a: Floats) -> tuple[float, ...]:
     """Ln Q - ln K of each reaction as given; nan where a fluid species of it is absent."""
-    missing = fluid & (amounts == 0.0)
-    nu = np.array([[c.numerator / c.denominator for c in row] for row in problem.nu])
-    values = nu @ ln_a - np.array(problem.ln_k)
+    values = nu @ ln_a - ln_k
     values[(nu[:, missing] != 0.0).any(axis=1)] = math.nan
     return tuple(values.tolist())
 
