@@ -3,13 +3,16 @@
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Callable
+from fractions import Fraction
 from functools import lru_cache
 from typing import Any, Final, Literal, NamedTuple
 
 from xleq.cells import BLANK, Blank, Grid, Value
 from xleq.constants import read_k
 from xleq.errors import InputError, OutOfRangeError
+from xleq.reactions import exact_multiplier
 from xleq.units import Quantity, checked, read_quantity
 
 Kind = Literal[
@@ -18,6 +21,7 @@ Kind = Literal[
     "texts",
     "number",
     "numbers",
+    "multipliers",
     "temperature",
     "temperatures",
     "temperature difference",
@@ -36,8 +40,12 @@ Kind = Literal[
     "options",
 ]
 
+_RATIO: Final = re.compile(r"\s*([+-]?\d{1,6})\s*/\s*(\d{1,6})\s*")
+
 #: Kinds that take a list: a range, an array, or text with semicolons.
-LIST_KINDS: Final = frozenset({"texts", "numbers", "temperatures", "amounts", "concentrations", "Ks", "K or data"})
+LIST_KINDS: Final = frozenset(
+    {"texts", "numbers", "multipliers", "temperatures", "amounts", "concentrations", "Ks", "K or data"}
+)
 
 WANT_WORDS: Final = (
     "moles", "fractions", "pressures", "concentrations", "change", "conversion", "extents", "total",
@@ -155,6 +163,23 @@ def _quantities(
     return read
 
 
+def _multipliers(value: Value | Grid, known: tuple[str, ...]) -> tuple[Fraction, ...]:
+    """Exact ratios: numbers such as 0.5, or text such as 1/2."""
+    ratios = []
+    for position, item in enumerate(_items(value), 1):
+        match = _RATIO.fullmatch(item) if isinstance(item, str) else None
+        try:
+            if match and int(match[2]):
+                ratios.append(Fraction(int(match[1]), int(match[2])))
+            else:
+                ratios.append(exact_multiplier(_measured(item, "number")))
+        except InputError as e:
+            raise InputError(f"item {position}: {e}") from e
+    if not ratios:
+        raise InputError("the list is empty")
+    return tuple(ratios)
+
+
 def _k(value: Value | Grid, known: tuple[str, ...]) -> float:
     item = _one(value)
     if isinstance(item, float | str) and not isinstance(item, bool):
@@ -188,7 +213,9 @@ def _block(value: Value | Grid, known: tuple[str, ...]) -> Grid:
 def _read_want(text: str) -> Want:
     word, _, species = text.strip().partition(" ")
     if word.lower() not in WANT_WORDS:
-        raise InputError(f"{word!r} is not a result; known are {', '.join(WANT_WORDS)}, with a species for one cell")
+        raise InputError(
+            f"{word!r} is not a result; known are {', '.join(WANT_WORDS)}, with a species for one cell"
+        )
     return Want(word.lower(), species.strip() or None)
 
 
@@ -224,6 +251,7 @@ READERS: Final[dict[Kind, Callable[[Value | Grid, tuple[str, ...]], Any]]] = {
     "texts": _texts,
     "number": _quantity("number"),
     "numbers": _quantities("number"),
+    "multipliers": _multipliers,
     "temperature": _quantity("temperature"),
     "temperatures": _quantities("temperature"),
     "temperature difference": _quantity("temperature difference"),
