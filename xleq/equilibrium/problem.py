@@ -254,6 +254,24 @@ class Batch:
         return Problem(self.species, self.phases, self.nu, n0, ln_k, state, self.formulas)
 
 
+def shifts(batch: Batch) -> NDArray[np.float64]:
+    """The constant of the ln activity of each instance [n_instances], as `State.shift` has it.
+
+    Parameters
+    ----------
+    batch : Batch
+    """
+    import numpy as np
+
+    if batch.kind == "P":
+        return np.log(batch.p / P_STANDARD_BAR)
+    if batch.kind == "V":
+        return np.log(R_L_BAR * batch.t / (batch.v * P_STANDARD_BAR))
+    if batch.kind == "C":
+        return -np.log(batch.v)
+    return np.zeros(len(batch.n0))
+
+
 @dataclass(frozen=True, slots=True)
 class BatchSolution:
     """The equilibria of a batch.

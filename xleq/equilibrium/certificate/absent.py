@@ -71,8 +71,8 @@ def absent_species(problem: Problem, rows: Rows, amounts: Floats, fluid: Flags) 
                 return f"{problem.species[made[highest]]} would form, yet its amount is 0"
         else:
             unsettled.append(k)
-    if unsettled and (name := _formable(problem, parts[unsettled], columns)):
-        return f"{name} could form, yet its amount is 0"
+    if unsettled and (made_first := formable(parts[unsettled])) is not None:
+        return f"{problem.species[columns[made_first]]} could form, yet its amount is 0"
     return ""
 
 
@@ -121,8 +121,31 @@ def _joint_drive(parts: Floats, cost: Floats, floor: Floats, names: list[str]) -
     return ""
 
 
-def _formable(problem: Problem, parts: Floats, columns: NDArray[np.intp]) -> str:
-    """The first absent species that some combination of reactions makes without consuming an absent one."""
+def formable(parts: Floats) -> int | None:
+    """The first absent species that some combination of reactions makes without consuming an absent one.
+
+    Parameters
+    ----------
+    parts : array [n_rows, n_absent]
+        Coefficients of the absent species in the reactions that make absent fluid species.
+
+    Returns
+    -------
+    int or None
+        Its column, or None if there is none.
+
+    Examples
+    --------
+    Neither A nor B can form where the one is made from the other:
+
+    >>> formable(np.array([[1.0, -1.0]])) is None
+    True
+    >>> formable(np.array([[1.0, 1.0]]))
+    0
+    """
+    for part in parts:
+        if (part >= 0.0).all():
+            return int(np.flatnonzero(part)[0])
     from scipy.optimize import linprog
 
     r, width = parts.shape
@@ -134,9 +157,9 @@ def _formable(problem: Problem, parts: Floats, columns: NDArray[np.intp]) -> str
         bounds=[(None, None)] * r + [(0.0, 1.0)] * width,
     )
     if found.status != 0 or found.x is None:
-        return str(problem.species[columns[0]])
+        return 0
     made = np.flatnonzero(found.x[r:] > 0.5)
-    return problem.species[columns[made[0]]] if len(made) else ""
+    return int(made[0]) if len(made) else None
 
 
 def _vanished(problem: Problem, rows: Rows, absent: Flags, fluid: Flags) -> str:
