@@ -12,10 +12,10 @@ from collections import OrderedDict
 from collections.abc import Callable, Hashable, Sequence
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Any, Final, Literal, TypeAlias
+from typing import Any, Final, Literal, TypeAlias, cast
 
-from xleq.cells import BLANK, MISSING, CellError, Grid, Missing, Value
-from xleq.errors import InputError, XleqError
+from xleq.cells import MISSING, Blank, CellError, Grid, Missing, Value
+from xleq.errors import InputError, ParseError, XleqError
 from xleq.functions.arguments import LIST_KINDS, READERS, Kind
 
 #: What a host hands over for one argument.
@@ -173,7 +173,7 @@ def _read_all(function: Function, given: Sequence[Given]) -> list[Any]:
         item: Given = given[i] if i < len(given) else MISSING
         if isinstance(item, list) and len(item) == 1 and len(item[0]) == 1:
             item = item[0][0]
-        if item is MISSING or item is BLANK:
+        if isinstance(item, Missing | Blank):
             if isinstance(argument.default, _Required):
                 raise InputError(f"argument {argument.name} is missing or empty: {argument.meaning}")
             if argument.default is None:
@@ -189,18 +189,17 @@ def _read_all(function: Function, given: Sequence[Given]) -> list[Any]:
 
 def _named(error: XleqError, name: str) -> XleqError:
     """The same kind of error with the argument's name before its message."""
-    base = next(c for c in type(error).__mro__ if c.__init__ is XleqError.__init__)
-    named = base(f"{name}: {error}")
-    assert isinstance(named, XleqError)
-    return named
+    # A ParseError is made of its text and position: here it is told as the InputError that it also is.
+    kind = InputError if isinstance(error, ParseError) else type(error)
+    return kind(f"{name}: {error}")
 
 
 def _laid_out(function: Function, given: Sequence[Given], result: Result) -> Value | Grid:
     if not isinstance(result, list):
         return result
     if result and isinstance(result[0], list):
-        return result  # type: ignore[return-value]  # a block already
-    values: list[Value] = result  # type: ignore[assignment]
+        return result
+    values = cast(list[Value], result)
     index = function.layout_argument
     if index is not None and index < len(given):
         item = given[index]

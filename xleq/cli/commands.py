@@ -1,0 +1,101 @@
+"""The commands and their options. Everything they need is imported when they run, so that help is at once."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Annotated
+
+import typer
+
+app = typer.Typer(
+    name="xleq",
+    help="Chemical-equilibrium worksheet functions: one formula, whole workbooks, and their checks.",
+    epilog="An equilibrium figure is a limit, not a rate or a design; have it checked by a qualified person.",
+    add_completion=False,
+    no_args_is_help=True,
+    pretty_exceptions_enable=False,
+    context_settings={"help_option_names": ["-h", "--help"]},
+)
+
+Books = Annotated[list[Path], typer.Argument(help="Workbooks (.xlsx, .xlsm).", show_default=False)]
+Json = Annotated[bool, typer.Option("--json", help="Print one JSON object a workbook instead.")]
+Set = Annotated[
+    list[str] | None,
+    typer.Option(
+        "--set", metavar="ADDRESS=VALUE", help="Put a value into an input cell or a defined name first."
+    ),
+]
+Trust = Annotated[
+    bool,
+    typer.Option(
+        "--trust-fresh", help="Write fresh values even where a stored value could not be reproduced."
+    ),
+]
+
+
+@app.command("eval")
+def evaluate(
+    formula: Annotated[str, typer.Argument(help="A formula, with or without the equals sign.")],
+    json: Json = False,
+) -> None:
+    """Evaluate one formula: its value, or its error and the reason."""
+    from xleq.cli.evaluate import run
+
+    raise typer.Exit(run(formula, as_json=json))
+
+
+@app.command()
+def recalc(
+    books: Books,
+    out: Annotated[
+        Path | None, typer.Option("--out", "-o", metavar="FILE", help="Where the recalculated copy goes.")
+    ] = None,
+    in_place: Annotated[
+        bool,
+        typer.Option("--in-place", help="Replace the workbook; a backup of the old one stays beside it."),
+    ] = False,
+    set_: Set = None,
+    trust_fresh: Trust = False,
+    json: Json = False,
+) -> None:
+    """Recalculate workbooks and write the fresh values; all else in the file stays as it is."""
+    from xleq.cli.recalculate import run
+
+    code = run(books, out=out, in_place=in_place, settings=set_ or [], trust_fresh=trust_fresh, as_json=json)
+    raise typer.Exit(code)
+
+
+@app.command()
+def check(books: Books, json: Json = False) -> None:
+    """Recalculate without writing; fail where stored and fresh values differ."""
+    from xleq.cli.recalculate import run_check
+
+    raise typer.Exit(run_check(books, as_json=json))
+
+
+@app.command()
+def functions(
+    name: Annotated[str | None, typer.Argument(help="A function's name.", show_default=False)] = None,
+    json: Json = False,
+) -> None:
+    """List the worksheet functions, or show one with arguments, units, source and examples."""
+    from xleq.cli.functions import run
+
+    raise typer.Exit(run(name, as_json=json))
+
+
+def _version(wanted: bool) -> None:
+    if wanted:
+        from xleq import __version__
+
+        print(f"xleq {__version__}")
+        raise typer.Exit
+
+
+@app.callback()
+def _options(
+    version: Annotated[
+        bool, typer.Option("--version", help="Show the version and exit.", callback=_version, is_eager=True)
+    ] = False,
+) -> None:
+    pass

@@ -1,0 +1,216 @@
+"""From the text in cells to an equilibrium problem: species, phases and coefficients of reactions."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from fractions import Fraction
+from functools import lru_cache
+from typing import Final, Literal
+
+from xleq.equilibrium import Phase, Problem, State
+from xleq.equilibrium.problem import Nonideality
+from xleq.errors import InputError, XleqError
+from xleq.reactions import Reaction, Species, check_balance, parse_reaction, parse_species
+
+#: The phase that is mixed: a gas, the solutes of a solution, or a liquid of several components.
+Fluid = Literal["g", "aq", "l"]
+
+_FLUID_NAMES: Final = {"g": "gas", "aq": "solution", "l": "liquid mixture"}
+_PHASE_NAMES: Final = {"g": "a gas", "aq": "dissolved", "l": "a liquid", "s": "a solid"}
+_ALLOWED: Final[dict[Fluid, str]] = {"g": "gls", "aq": "als", "l": "ls"}
+#: Amount of solvent water taken where a species list leaves it out: 997.05 g/L over 18.015 g/mol. [mol/L]
+SOLVENT_WATER: Final = 55.35
+
+
+@dataclass(frozen=True, slots=True)
+class System:
+    """Species and reactions of an equilibrium, before amounts and conditions are known.
+
+    Parameters
+    ----------
+    names : tuple [n_species] of str
+        As the user wrote them; solvent water that was left out comes last.
+    species : tuple [n_species] of Species
+    phases : tuple [n_species] of {"fluid", "pure"}
+    reactions : tuple [n_reactions] of Reaction
+    nu : tuple [n_reactions] of tuple [n_species] of Fraction
+    formulas : tuple [n_species] of mapping, or None
+        None unless every species has a formula.
+    n_listed : int
+        Number of species in the user's list.
+    notes : tuple of str
+        What a checker should know: reactions whose elements could not be checked.
+    """
+
+    names: tuple[str, ...]
+    species: tuple[Species, ...]
+    phases: tuple[Phase, ...]
+    reactions: tuple[Reaction, ...]
+    nu: tuple[tuple[Fraction, ...], ...]
+    formulas: tuple[Mapping[str, Fraction] | None, ...] | None
+    n_listed: int
+    notes: tuple[str, ...]
+
+    def index(self, text: str) -> int:
+        """Place of a species in the list.
+
+        Raises
+        ------
+        InputError
+            If it is not there, or the text fits more than one.
+        """
+        return _place(self.species[: self.n_listed], text)
+
+    def problem(
+        self,
+        feed: tuple[float, ...],
+        ln_k: tuple[float, ...],
+        state: State,
+        model: Nonideality | None = None,
+    ) -> Problem:
+        """The problem for given amounts, constants and conditions.
+
+        Raises
+        ------
+        InputError
+            If the lists do not fit, or a species neither reacts nor is fed.
+        """
+        if len(feed) != self.n_listed:
+            raise InputError(f"{self.n_listed} species but {len(feed)} amounts; give one amount a species")
+        if len(ln_k) != len(self.nu):
+            raise InputError(f"{len(self.nu)} reactions but {len(ln_k)} constants; give one K a reaction")
+        for i, amount in enumerate(feed):
+            if amount == 0.0 and not any(row[i] for row in self.nu):
+                raise InputError(
+                    f"{self.names[i]} takes part in no reaction and has no feed; "
+                    "correct its spelling or take it off the list"
+                )
+        if len(self.names) > self.n_listed:
+            feed = (*feed, SOLVENT_WATER * state.v)
+        return Problem(self.names, self.phases, self.nu, feed, ln_k, state, self.formulas, model)
+
+
+@lru_cache(maxsize=4096)
+def system(reactions: tuple[str, ...], species: tuple[str, ...], fluid: Fluid) -> System:
+    """Read and check reactions and a list of species.
+
+    Parameters
+    ----------
+    reactions : tuple [n_reactions] of str
+    species : tuple [n_species] of str
+        Every species of the reactions, and those that do not react.
+    fluid : {"g", "aq", "l"}
+        What a species without a phase is.
+
+    Raises
+    ------
+    InputError
+        If a text cannot be read, a reaction does not balance, or list and reactions do not fit.
+    """
+    read: list[Reaction] = []
+    notes: list[str] = []
+    for number, text in enumerate(reactions, 1):
+        try:
+            reaction = parse_reaction(text, fluid)
+            note = check_balance(reaction)
+        except XleqError as e:
+            if len(reactions) == 1:
+                raise
+            raise InputError(f"reaction {number}: {e}") from e
+        read.append(reaction)
+        if note:
+            notes.append(f"reaction {number}: {note}")
+    taking_part = list(dict.fromkeys(_settled(s, fluid) for r in read for s in r.species))
+    listed = [_settled(parse_species(text, fluid), fluid) for text in species]
+    found = [_match(s, text, taking_part) for s, text in zip(listed, species, strict=True)]
+    for i, s in enumerate(found):
+        if s in found[:i]:
+            raise InputError(f"species {species[i]} is in the list twice")
+    names = list(species)
+    for s in taking_part:
+        if s in found:
+            continue
+        if fluid == "aq" and s.name == "H2O" and s.phase == "l":
+            found.append(s)
+            names.append("H2O(l)")
+        else:
+            raise InputError(
+                f"{s.text} takes part in a reaction but is not in the list of species{_near(s, listed)}"
+            )
+    for s in found:
+        _check_phase(s, fluid)
+    nu = tuple(tuple(_coefficient(r, s, fluid) for s in found) for r in read)
+    mixed = {"g": "g", "aq": "aq", "l": "l"}[fluid]
+    formulas = tuple(s.composition() for s in found)
+    return System(
+        tuple(names),
+        tuple(found),
+        tuple("fluid" if s.phase == mixed else "pure" for s in found),
+        tuple(read),
+        nu,
+        None if any(f is None for f in formulas) else formulas,
+        len(species),
+        tuple(notes),
+    )
+
+
+def _settled(s: Species, fluid: Fluid) -> Species:
+    """Water without a phase in a solution is the solvent, not a solute."""
+    if fluid == "aq" and s.name == "H2O" and not s.marked:
+        return replace(s, phase="l")
+    return s
+
+
+def _match(s: Species, text: str, taking_part: list[Species]) -> Species:
+    """The species of the reactions that an item of the list means; the item itself if it does not react."""
+    if s in taking_part:
+        return s
+    same = [t for t in taking_part if t.name == s.name]
+    if same and not s.marked:
+        if len(same) > 1:
+            raise InputError(f"species {text} could be {' or '.join(t.key for t in same)}; write its phase")
+        return same[0]
+    if same and not any(t.marked for t in same):
+        raise InputError(
+            f"species {text} is {same[0].key} in the reactions, where no phase is written; "
+            f"write {s.key} there too"
+        )
+    return s
+
+
+def _near(s: Species, listed: list[Species]) -> str:
+    same = [t.key for t in listed if t.name == s.name]
+    return f"; the list has {same[0]}" if same else ""
+
+
+def _check_phase(s: Species, fluid: Fluid) -> None:
+    if s.electron:
+        raise InputError("an electron has no amount at equilibrium; combine the half reactions first")
+    assert s.phase is not None
+    if s.phase[0] not in _ALLOWED[fluid]:
+        raise InputError(
+            f"{s.key} is {_PHASE_NAMES[s.phase]}; a {_FLUID_NAMES[fluid]} here holds "
+            + ("gases" if fluid == "g" else "solutes" if fluid == "aq" else "liquids")
+            + " beside pure solids"
+            + ("" if fluid == "l" else " and liquids")
+        )
+
+
+def _coefficient(reaction: Reaction, s: Species, fluid: Fluid) -> Fraction:
+    pairs = zip(reaction.species, reaction.nu, strict=True)
+    return sum((nu for own, nu in pairs if _settled(own, fluid) == s), Fraction(0))
+
+
+def _place(species: tuple[Species, ...], text: str) -> int:
+    bare = parse_species(text)
+    places = [
+        i
+        for i, s in enumerate(species)
+        if s.name == bare.name and (bare.phase is None or s.phase == bare.phase)
+    ]
+    if len(places) == 1:
+        return places[0]
+    if places:
+        raise InputError(f"{text} could be {' or '.join(species[i].key for i in places)}; write its phase")
+    raise InputError(f"{text} is not in the list of species: {', '.join(s.text for s in species)}")
