@@ -1,1 +1,48 @@
 """The table of worksheet functions and their definitions by topic."""
+
+from __future__ import annotations
+
+import difflib
+from collections.abc import Sequence
+from typing import Final
+
+from xleq.cells import NAME, CellError, Grid, Value
+from xleq.functions import composition, program, reactions
+from xleq.functions.table import Argument, Example, Function, Given, Memory
+
+#: Every worksheet function by name, in the order of the reference.
+TABLE: Final[dict[str, Function]] = {
+    f.name: f for topic in (reactions, composition, program) for f in topic.FUNCTIONS
+}
+
+_MEMORY: Final = Memory()
+
+__all__ = ["TABLE", "Argument", "Example", "Function", "call"]
+
+
+def call(name: str, given: Sequence[Given]) -> Value | Grid:
+    """Value or block of a worksheet function, as a host calls it.
+
+    Parameters
+    ----------
+    name : str
+        In any case.
+    given : sequence
+        Cell values, blocks (lists of rows) or `MISSING`, as many as the formula has arguments.
+
+    Returns
+    -------
+    Value or Grid
+        A cell error with its reason wherever the function gives none.
+
+    Examples
+    --------
+    >>> call("XLEQ_COMPOSITION_V", ["2 HI = H2 + I2", 0.25, "HI; H2; I2", "1; 0; 0", 700.0, 1.0, "moles H2"])
+    0.25
+    """
+    function = TABLE.get(name) or TABLE.get(name.upper())
+    if function is None:
+        near = difflib.get_close_matches(name.upper(), TABLE, 3, 0.6)
+        hint = f"; near it: {', '.join(near)}" if near else ""
+        return CellError(NAME.code, f"there is no function {name}{hint}")
+    return _MEMORY.evaluate(function, given)
