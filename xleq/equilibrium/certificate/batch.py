@@ -175,7 +175,8 @@ def _near(g: Group, present: Flags, residual: Floats, floor: Floats, total: Floa
     top = gross.max(axis=2)
     slope /= top[:, :, None]
     length = np.sqrt((slope * slope).sum(axis=2))
-    clear: Flags = np.logical_and((top > 0.0).all(axis=1), (length > 4.0 * ROUNDING).all(axis=1))
+    clear: Flags = np.array(top > 0.0).all(axis=1)
+    clear &= np.array(length > 4.0 * ROUNDING).all(axis=1)
     slope[clear] /= length[clear][:, :, None]
     slope[~clear] = np.eye(len(nu), slope.shape[2])
     try:
