@@ -20,6 +20,8 @@ from xleq.workbook.records import (
     SheetState,
     Table,
 )
+from xleq.workbook.writing.placing import open_elsewhere
+from xleq.workbook.writing.saving import Written, write_book
 
 __all__ = [
     "Area",
@@ -39,5 +41,8 @@ __all__ = [
     "SheetResults",
     "SheetState",
     "Table",
+    "Written",
     "open_book",
+    "open_elsewhere",
+    "write_book",
 ]

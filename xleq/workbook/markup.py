@@ -1,8 +1,8 @@
 """Reading XML safely: one parser for every part, no document types, no entities, bounded depth.
 
-Expat reads all parts. Small parts become a tree of `Node`; sheets and shared strings are streamed by
-`xleq.workbook.reading.sheets` and `xleq.workbook.strings` with a parser from here. Names in the main namespace of
-spreadsheets, transitional or strict, come as bare local names; any other name as ``namespace local``.
+Expat reads all parts. Small parts become a tree of `Node`; sheets and shared strings are streamed in
+`xleq.workbook.reading` with a parser from here. Names in the main namespace of spreadsheets, transitional
+or strict, come as bare local names; any other name as ``namespace local``.
 """
 
 from __future__ import annotations

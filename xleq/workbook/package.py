@@ -7,6 +7,7 @@ import struct
 import zipfile
 import zlib
 from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 from types import TracebackType
 from typing import Final, NamedTuple
@@ -34,6 +35,15 @@ _ZIP_ERRORS: Final = (
 )
 
 
+@contextmanager
+def about(path: Path) -> Iterator[None]:
+    """Put the file's path before the message of a `BookError`."""
+    try:
+        yield
+    except BookError as error:
+        raise type(error)(f"{path} {error}") from error
+
+
 class Relationship(NamedTuple):
     """A link from one part to another: id, last word of its type, member name or outside target."""
 
@@ -57,7 +67,7 @@ class Package:
     ------
     BookError
         One of its classes, if the file is missing, not a readable archive, encrypted or over a limit.
-        Messages do not name the file: `xleq.workbook.reading.opening.open_book` does, once.
+        Messages do not name the file: the caller does, with `about`.
     """
 
     def __init__(self, path: Path, limits: Limits) -> None:

@@ -7,11 +7,11 @@ from dataclasses import dataclass, field
 from os import PathLike
 from pathlib import Path
 
-from xleq.errors import BookError, DamagedBookError
+from xleq.errors import DamagedBookError
 from xleq.workbook.limits import Limits
-from xleq.workbook.reading.links import read_links
 from xleq.workbook.markup import Node
-from xleq.workbook.package import Package, Relationship
+from xleq.workbook.package import Package, Relationship, about
+from xleq.workbook.reading.links import read_links
 from xleq.workbook.reading.metadata import Metadata, read_metadata
 from xleq.workbook.reading.parts import (
     read_calculation,
@@ -21,9 +21,9 @@ from xleq.workbook.reading.parts import (
     read_tabs,
     uses_1904,
 )
-from xleq.workbook.records import Book, Sheet, SheetKind, Table
 from xleq.workbook.reading.sheets import read_cells
 from xleq.workbook.reading.strings import read_strings
+from xleq.workbook.records import Book, Sheet, SheetKind, Table
 
 _SIGNATURES = "_xmlsignatures/"
 
@@ -69,11 +69,8 @@ def open_book(path: str | PathLike[str], limits: Limits | None = None) -> Book:
         The message is one line that begins with the path.
     """
     path = Path(path)
-    try:
-        with Package(path, limits or Limits()) as package:
-            return _read(package)
-    except BookError as error:
-        raise type(error)(f"{path} {error}") from error
+    with about(path), Package(path, limits or Limits()) as package:
+        return _read(package)
 
 
 def workbook_part(package: Package) -> str:
