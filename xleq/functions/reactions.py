@@ -62,6 +62,10 @@ def _multipliers_of(target: str, reactions: tuple[str, ...]) -> tuple[Fraction, 
     return tuple(rx.multipliers(_checked(target), [_checked(r) for r in reactions]))
 
 
+def _balance(reaction: str) -> str:
+    return rx.balance(reaction)
+
+
 def _expression(reaction: str, basis: str) -> str:
     read = balanced_reaction(reaction)
     if basis.strip().lower() == "kx" and rx.liquids_mix(read):
@@ -98,7 +102,7 @@ FUNCTIONS: Final = (
         "reactions",
         (Argument("reaction", "text", "reaction text; coefficients in it are not used"),),
         "the balanced reaction as text, with the smallest whole numbers",
-        rx.balance,
+        _balance,
         (
             _UNREADABLE,
             "#VALUE! if a species has no formula or is written twice",

@@ -3,16 +3,18 @@
 from xleq.reactions.balancing import balance, check_balance, unchecked_species
 from xleq.reactions.combining import combine, exact_multiplier, multipliers, with_same_phases
 from xleq.reactions.elements import atomic_weights
-from xleq.reactions.equations import Reaction, Term, parse_reaction, reaction_text
+from xleq.reactions.equations import Reaction, Term, parse_reaction, reaction_text, with_species
 from xleq.reactions.formulas import Formula, molar_mass, parse_formula
 from xleq.reactions.linear import null_space, reduced, smallest_integers
 from xleq.reactions.quotients import (
+    dissolved_phases,
     expression,
     find_species,
     gas_change,
     liquids_mix,
     natural_phases,
     phase_change,
+    solvent_settled,
 )
 from xleq.reactions.species import Phase, Species, parse_species
 
@@ -26,6 +28,7 @@ __all__ = [
     "balance",
     "check_balance",
     "combine",
+    "dissolved_phases",
     "exact_multiplier",
     "expression",
     "find_species",
@@ -42,6 +45,8 @@ __all__ = [
     "reaction_text",
     "reduced",
     "smallest_integers",
+    "solvent_settled",
     "unchecked_species",
     "with_same_phases",
+    "with_species",
 ]

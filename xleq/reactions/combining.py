@@ -9,7 +9,7 @@ from fractions import Fraction
 from typing import Final
 
 from xleq.errors import AmbiguousError, InputError, NoAnswerError
-from xleq.reactions.equations import Reaction, Term, reaction_text
+from xleq.reactions.equations import Reaction, reaction_text, with_species
 from xleq.reactions.linear import reduced
 from xleq.reactions.species import Phase, Species
 
@@ -70,22 +70,13 @@ def with_same_phases(reactions: Sequence[Reaction]) -> list[Reaction]:
             raise AmbiguousError(f"{name} is written without a phase and also as {shown}; write its phase")
         if None in phases and named:
             renamed[name] = named[0]
-    return [_with_phases(r, renamed) for r in reactions] if renamed else list(reactions)
 
-
-def _with_phases(reaction: Reaction, phases: dict[str, Phase]) -> Reaction:
-    def of(species: Species) -> Species:
-        if species.phase is None and species.name in phases:
-            return replace(species, phase=phases[species.name], marked=True)
+    def settled(species: Species) -> Species:
+        if species.phase is None and species.name in renamed:
+            return replace(species, phase=renamed[species.name], marked=True)
         return species
 
-    def side(terms: Sequence[Term]) -> tuple[Term, ...]:
-        return tuple(Term(t.coefficient, of(t.species)) for t in terms)
-
-    net: dict[Species, Fraction] = {}
-    for species, nu in zip(reaction.species, reaction.nu, strict=True):
-        net[of(species)] = net.get(of(species), Fraction(0)) + nu
-    return Reaction(tuple(net), tuple(net.values()), side(reaction.left), side(reaction.right), reaction.text)
+    return [with_species(r, settled) for r in reactions] if renamed else list(reactions)
 
 
 def combine(reactions: Sequence[Reaction], multipliers: Sequence[Fraction]) -> str:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass, field
 from fractions import Fraction
 from functools import lru_cache
@@ -109,6 +109,32 @@ def parse_reaction(text: str, default_phase: Phase | None = None) -> Reaction:
     if not any(net.values()):
         raise InputError(f"{text!r}: both sides are the same, nothing reacts")
     return Reaction(tuple(net), tuple(net.values()), left, right, text)
+
+
+def with_species(reaction: Reaction, of: Callable[[Species], Species]) -> Reaction:
+    """The reaction with each species replaced; those that become the same are added up.
+
+    Parameters
+    ----------
+    reaction : Reaction
+    of : callable
+        The new species for an old one.
+
+    Examples
+    --------
+    >>> reaction = with_species(parse_reaction("CO + H2O = CO2 + H2"), lambda s: parse_species(s.name, "g"))
+    >>> [s.key for s in reaction.species]
+    ['CO(g)', 'H2O(g)', 'CO2(g)', 'H2(g)']
+    """
+
+    def side(terms: tuple[Term, ...]) -> tuple[Term, ...]:
+        return tuple(Term(t.coefficient, of(t.species)) for t in terms)
+
+    net: dict[Species, Fraction] = {}
+    for old, nu in zip(reaction.species, reaction.nu, strict=True):
+        new = of(old)
+        net[new] = net[new] + nu if new in net else nu
+    return Reaction(tuple(net), tuple(net.values()), side(reaction.left), side(reaction.right), reaction.text)
 
 
 def _arrow(text: str) -> tuple[int, int]:

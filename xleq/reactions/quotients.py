@@ -9,7 +9,7 @@ from functools import lru_cache
 from typing import Final
 
 from xleq.errors import InputError
-from xleq.reactions.equations import Reaction, parse_reaction
+from xleq.reactions.equations import Reaction, parse_reaction, with_species
 from xleq.reactions.species import Phase, Species
 
 _LABEL: Final = re.compile(r"\s*(K°?|Kp|Kc|Kx)\s*(\[[^\[\]]*\])?\s*")
@@ -17,7 +17,7 @@ _LABEL: Final = re.compile(r"\s*(K°?|Kp|Kc|Kx)\s*(\[[^\[\]]*\])?\s*")
 
 @lru_cache(maxsize=16384)
 def natural_phases(text: str) -> Reaction:
-    """A reaction whose species without a phase are gases, or solutes if an ion takes part.
+    """A reaction whose species without a phase are gases, or solutes (water: the solvent) if an ion takes part.
 
     For functions that are neither of gases nor of solutions. Where a dissolved species is marked `(aq)`, a
     neutral one without a phase could be either, and is refused.
@@ -44,13 +44,48 @@ def natural_phases(text: str) -> Reaction:
     bare = parse_reaction(text)
     ions = any(s.charge and not s.electron and s.phase != "g" for s in bare.species)
     dissolved = any(s.phase == "aq" for s in bare.species)
-    open_phase = [s.name for s in bare.species if s.phase is None and not s.charge]
+    open_phase = [s.name for s in bare.species if s.phase is None and not s.charge and s.name != "H2O"]
     if dissolved and open_phase:
         raise InputError(
             f"{text!r}: {open_phase[0]} has no phase while others are dissolved; "
             f"write {open_phase[0]}(g), {open_phase[0]}(l) or {open_phase[0]}(aq)"
         )
-    return parse_reaction(text, "aq" if ions or dissolved else "g")
+    return dissolved_phases(text) if ions or dissolved else parse_reaction(text, "g")
+
+
+def dissolved_phases(text: str) -> Reaction:
+    """A reaction in solution: species without a phase are solutes, but water is the pure solvent.
+
+    Parameters
+    ----------
+    text : str
+        Reaction text.
+
+    Raises
+    ------
+    ParseError
+        If the text cannot be read.
+
+    Examples
+    --------
+    >>> [s.key for s in dissolved_phases("NH3 + H2O = NH4+ + OH-").species]
+    ['NH3(aq)', 'H2O(l)', 'NH4+(aq)', 'OH-(aq)']
+    """
+    return with_species(parse_reaction(text, "aq"), solvent_settled)
+
+
+def solvent_settled(species: Species) -> Species:
+    """Water that is a solute only by default is the solvent; any other species is returned as it came.
+
+    Examples
+    --------
+    >>> from xleq.reactions.species import parse_species
+    >>> solvent_settled(parse_species("H2O", "aq")).key, solvent_settled(parse_species("H2O(aq)")).key
+    ('H2O(l)', 'H2O(aq)')
+    """
+    if species.name == "H2O" and not species.marked:
+        return replace(species, phase="l")
+    return species
 
 
 def phase_change(reaction: Reaction, phase: Phase) -> Fraction:
@@ -182,15 +217,3 @@ def find_species(reaction: Reaction, wanted: Species) -> Species:
     if len(fits) > 1:
         raise InputError(f"{wanted.text} is in {reaction.text!r} in {len(fits)} phases; write its phase")
     return fits[0]
-
-
-def as_mixture(reaction: Reaction) -> Reaction:
-    """The reaction with its liquids, and what has no phase, as the species of one liquid mixture.
-
-    Examples
-    --------
-    >>> [s.key for s in as_mixture(parse_reaction("CH3COOH + C2H5OH(l) = CH3COOC2H5 + H2O")).species]
-    ['CH3COOH(l)', 'C2H5OH(l)', 'CH3COOC2H5(l)', 'H2O(l)']
-    """
-    species = tuple(replace(s, phase="l") if s.phase is None else s for s in reaction.species)
-    return replace(reaction, species=species)
