@@ -2,6 +2,7 @@
 
 from xleq.thermo.reactions import ReactionData, reaction_data
 from xleq.thermo.records import T_STANDARD, CpPart, Interval, Sources, SpeciesData, integrated
+from xleq.thermo.sheets import read_data
 from xleq.thermo.table import Table, citations, standard_table
 
 __all__ = [
@@ -15,5 +16,6 @@ __all__ = [
     "citations",
     "integrated",
     "reaction_data",
+    "read_data",
     "standard_table",
 ]

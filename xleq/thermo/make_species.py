@@ -31,7 +31,11 @@ CALORIE: Final = 4.184
 T_ROOM: Final = 298.15
 #: Lowest temperature to which a Cp given from 298 K upwards is continued; 25 K change H by a few J/mol.
 T_COLD: Final = 273.15
-T_HOT: Final = 4000.0
+#: Highest temperature of what is refitted [K]; in hotter flames only the small molecules are left.
+T_HOT: Final = 3000.0
+T_FLAME: Final = 4000.0
+_SMALL: Final = "H2(g) O2(g) N2(g) CO(g) CO2(g) H2O(g) OH(g) H(g) O(g) N(g) NO(g) HCl(g) Cl(g)"
+FLAME: Final = frozenset(_SMALL.split())
 _GASES: Final = (
     "H2(g) O2(g) N2(g) Cl2(g) F2(g) Ar(g) He(g) Ne(g) Kr(g) Xe(g) Br2(l) Hg(l) I2(s) C(s) S(s) P(s)"
 )
@@ -123,11 +127,11 @@ def _from_shomate(intervals: list[list[float]], table: str) -> list[Piece]:
     return pieces
 
 
-def _from_trc(row: dict[str, str]) -> list[Piece]:
+def _from_trc(row: dict[str, str], t_hot: float) -> list[Piece]:
     from chemicals.heat_capacity import TRCCp
 
     a = [float(row[f"a{i}"] or 0.0) for i in range(8)]
-    low, high = max(200.0, float(row["Tmin"])), min(T_HOT, float(row["Tmax"]))
+    low, high = max(200.0, float(row["Tmin"])), min(t_hot, float(row["Tmax"]))
     return fit_function(lambda t: float(TRCCp(t, *a)), low, high)
 
 
@@ -161,11 +165,11 @@ def heat_capacity(row: dict[str, str], tables: Tables, chosen: dict[str, tuple[s
     trc = tables.trc.get(cas) if phase == "g" else None
     if row["cp"] != "janaf":
         if trc and float(trc["Tmin"]) <= 200.0 and float(trc["Tmax"]) >= 1500.0:
-            return Cp(_from_trc(trc), "TRC")
+            return Cp(_from_trc(trc, T_FLAME if row["species"] in FLAME else T_HOT), "TRC")
         if shomate and not (phase == "l" and cas in tables.liquid):
             return Cp(_from_shomate(shomate, table), "WB")
         if trc:
-            return Cp(_from_trc(trc), "TRC")
+            return Cp(_from_trc(trc, T_FLAME if row["species"] in FLAME else T_HOT), "TRC")
         if phase == "l" and cas in tables.liquid:
             return Cp(_from_dippr(tables.liquid[cas]), "PERRY153")
     if table:
