@@ -1,0 +1,1 @@
+"""Engineering: units, number bases, bits, complex numbers, Bessel functions."""
