@@ -2,9 +2,29 @@
 
 from __future__ import annotations
 
-from xleq.equilibrium.problem import Certificate, Nonideality, Phase, Problem, Solution, State
+from xleq.equilibrium.problem import (
+    Batch,
+    BatchSolution,
+    Certificate,
+    Nonideality,
+    Phase,
+    Problem,
+    Solution,
+    State,
+)
 
-__all__ = ["Certificate", "Nonideality", "Phase", "Problem", "Solution", "State", "solve"]
+__all__ = [
+    "Batch",
+    "BatchSolution",
+    "Certificate",
+    "Nonideality",
+    "Phase",
+    "Problem",
+    "Solution",
+    "State",
+    "solve",
+    "solve_batch",
+]
 
 
 def solve(problem: Problem) -> Solution:
@@ -46,3 +66,25 @@ def solve(problem: Problem) -> Solution:
     from xleq.equilibrium import many
 
     return many.solve(problem)
+
+
+def solve_batch(batch: Batch) -> BatchSolution:
+    """The equilibria of many instances of one system, each with its certificate.
+
+    An instance that has no certified answer has a reason and no numbers; it does not stop the others.
+
+    Parameters
+    ----------
+    batch : Batch
+
+    Returns
+    -------
+    BatchSolution
+    """
+    if len(batch.nu) == 1:
+        from xleq.equilibrium import single_batch
+
+        return single_batch.solve_batch(batch)
+    from xleq.equilibrium import many_batch
+
+    return many_batch.solve_batch(batch)

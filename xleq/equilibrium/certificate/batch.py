@@ -157,8 +157,7 @@ def _moves_fit(g: Group) -> Flags:
     off = np.abs(moved[:, others] - moved[:, g.pivots] @ nu)
     allowed = g.n[:, others] + g.n[:, g.pivots] @ np.abs(nu)
     blur = 4.0 * ROUNDING * (gross[:, others] + gross[:, g.pivots] @ np.abs(nu))
-    ok: Flags = (off + blur <= BALANCE_TOLERANCE * allowed).all(axis=1)
-    return ok
+    return np.asarray(np.all(off + blur <= BALANCE_TOLERANCE * allowed, axis=1))
 
 
 def _near(g: Group, present: Flags, residual: Floats, floor: Floats, total: Floats) -> Flags:
@@ -175,8 +174,7 @@ def _near(g: Group, present: Flags, residual: Floats, floor: Floats, total: Floa
     top = gross.max(axis=2)
     slope /= top[:, :, None]
     length = np.sqrt((slope * slope).sum(axis=2))
-    clear: Flags = np.array(top > 0.0).all(axis=1)
-    clear &= np.array(length > 4.0 * ROUNDING).all(axis=1)
+    clear = np.array((top > 0.0) & (length > 4.0 * ROUNDING)).all(axis=1)
     slope[clear] /= length[clear][:, :, None]
     slope[~clear] = np.eye(len(nu), slope.shape[2])
     try:
