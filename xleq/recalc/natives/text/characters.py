@@ -67,7 +67,8 @@ def listed(arguments: tuple[Argument, ...]) -> list[Value]:
         elif isinstance(argument, Missing):
             values.append(BLANK)
         else:
-            assert not isinstance(argument, Ref) and not callable(argument)
+            assert not isinstance(argument, Ref)
+            assert not callable(argument)
             values.append(argument)
     return values
 

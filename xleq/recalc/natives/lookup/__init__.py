@@ -1,0 +1,1 @@
+"""Lookups: finding values in tables, and references to places."""
