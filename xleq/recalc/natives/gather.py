@@ -7,8 +7,9 @@ for the functions whose names end in A, also logicals as 1 and 0 and text as 0. 
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable
-from typing import TYPE_CHECKING, Final
+from collections.abc import Callable, Iterable
+from functools import wraps
+from typing import TYPE_CHECKING, Any, Final, TypeVar, cast
 
 from xleq.cells import BLANK, DIV0, MISSING, NA, NUM, VALUE, CellError
 from xleq.recalc.operands import ERROR_KIND, NUMBER_KIND, Argument, Array, Fail
@@ -162,3 +163,25 @@ def ratio(x: float, y: float) -> float:
     if y == 0.0:
         raise Fail(DIV0)
     return x / y
+
+
+_F = TypeVar("_F", bound=Callable[..., Any])
+
+
+def guarded(call: _F) -> _F:
+    """The function with #NUM! for `ValueError`, `OverflowError` and results that are not finite.
+
+    `ZeroDivisionError` becomes #DIV/0!. The evaluator itself does this for functions of numbers alone.
+    """
+
+    @wraps(call)
+    def guard(*arguments: Any) -> Any:
+        try:
+            result = call(*arguments)
+        except (ValueError, OverflowError):
+            raise Fail(NUM) from None
+        except ZeroDivisionError:
+            raise Fail(DIV0) from None
+        return finite(result) if type(result) is float else result
+
+    return cast(_F, guard)

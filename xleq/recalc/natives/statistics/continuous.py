@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 
+from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.table import native
 
 _MOST_FREEDOM = 1e10
@@ -57,6 +58,7 @@ def beta_quantile(p: float, a: float, b: float) -> float:
 
 
 @native("EXPON.DIST EXPONDIST", "number number logical")
+@guarded
 def expon_dist(x: float, rate: float, cumulative: bool) -> float:
     """Exponential distribution."""
     if x < 0.0 or rate <= 0.0:
@@ -65,6 +67,7 @@ def expon_dist(x: float, rate: float, cumulative: bool) -> float:
 
 
 @native("GAMMA.DIST GAMMADIST", "number number number logical")
+@guarded
 def gamma_dist(x: float, shape: float, scale: float, cumulative: bool) -> float:
     """Gamma distribution."""
     if x < 0.0 or shape <= 0.0 or scale <= 0.0:
@@ -83,6 +86,7 @@ def gamma_inv(p: float, shape: float, scale: float) -> float:
 
 
 @native("BETA.DIST", "number number number logical number~ number~")
+@guarded
 def beta_dist(x: float, a: float, b: float, cumulative: bool, low: float = 0.0, high: float = 1.0) -> float:
     """Beta distribution between limits."""
     if a <= 0.0 or b <= 0.0 or not low <= x <= high or low == high:
@@ -114,6 +118,7 @@ def beta_inv(p: float, a: float, b: float, low: float = 0.0, high: float = 1.0) 
 
 
 @native("WEIBULL WEIBULL.DIST", "number number number logical")
+@guarded
 def weibull(x: float, shape: float, scale: float, cumulative: bool) -> float:
     """Weibull distribution."""
     if x < 0.0 or shape <= 0.0 or scale <= 0.0:
@@ -127,6 +132,7 @@ def weibull(x: float, shape: float, scale: float, cumulative: bool) -> float:
 
 
 @native("CHISQ.DIST", "number number logical")
+@guarded
 def chisq_dist(x: float, freedom: float, cumulative: bool) -> float:
     """Chi-squared distribution."""
     return gamma_dist(x, _freedom(freedom) / 2.0, 2.0, cumulative)
@@ -160,6 +166,7 @@ def t_above(x: float, freedom: float) -> float:
 
 
 @native("T.DIST", "number number logical")
+@guarded
 def t_dist(x: float, freedom: float, cumulative: bool) -> float:
     """Student's t distribution."""
     n = _freedom(freedom)
@@ -227,6 +234,7 @@ def confidence_t(alpha: float, deviation: float, size: float) -> float:
 
 
 @native("F.DIST", "number number number logical")
+@guarded
 def f_dist(x: float, above: float, below: float, cumulative: bool) -> float:
     """F distribution; degrees of freedom of the numerator and of the denominator."""
     m, n = _freedom(above), _freedom(below)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 
 from xleq.recalc.natives.arithmetic.counting import combinations
+from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.statistics.continuous import beta_below, gamma_above
 from xleq.recalc.natives.table import native
 
@@ -37,6 +38,7 @@ def binomial_up_to(k: int, n: int, p: float) -> float:
 
 
 @native("BINOM.DIST BINOMDIST", "number number number logical")
+@guarded
 def binom_dist(successes: float, trials: float, p: float, cumulative: bool) -> float:
     """Binomial distribution."""
     k, n = math.trunc(successes), math.trunc(trials)
@@ -74,6 +76,7 @@ def binom_inv(trials: float, p: float, alpha: float) -> float:
 
 
 @native("NEGBINOM.DIST", "number number number logical")
+@guarded
 def negbinom_dist(failures: float, successes: float, p: float, cumulative: bool) -> float:
     """Chance of a number of failures before a number of successes."""
     k, r = math.trunc(failures), math.trunc(successes)
@@ -97,6 +100,7 @@ def negbinomdist(failures: float, successes: float, p: float) -> float:
 
 
 @native("POISSON POISSON.DIST", "number number logical")
+@guarded
 def poisson(events: float, mean: float, cumulative: bool) -> float:
     """Poisson distribution."""
     k = math.trunc(events)
@@ -125,6 +129,7 @@ def _hypergeometric(k: int, sample: int, successes: int, population: int) -> flo
 
 
 @native("HYPGEOM.DIST", "number number number number logical")
+@guarded
 def hypgeom_dist(k: float, sample: float, successes: float, population: float, cumulative: bool) -> float:
     """Hypergeometric distribution."""
     found, drawn = math.trunc(k), math.trunc(sample)

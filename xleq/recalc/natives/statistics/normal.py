@@ -6,6 +6,7 @@ import math
 from functools import cache
 from statistics import NormalDist
 
+from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.table import native
 
 _ROOT_2 = math.sqrt(2.0)
@@ -50,6 +51,7 @@ def normal_quantile(p: float) -> float:
 
 
 @native("NORM.DIST NORMDIST", "number number number logical")
+@guarded
 def norm_dist(x: float, mean: float, deviation: float, cumulative: bool) -> float:
     """Normal distribution."""
     if deviation <= 0.0:
@@ -67,6 +69,7 @@ def norm_inv(p: float, mean: float, deviation: float) -> float:
 
 
 @native("NORM.S.DIST", "number logical")
+@guarded
 def norm_s_dist(z: float, cumulative: bool) -> float:
     """Standard normal distribution."""
     return normal_below(z) if cumulative else normal_density(z)
@@ -97,6 +100,7 @@ def phi(z: float) -> float:
 
 
 @native("LOGNORM.DIST", "number number number logical")
+@guarded
 def lognorm_dist(x: float, mean: float, deviation: float, cumulative: bool) -> float:
     """Lognormal distribution."""
     if x <= 0.0 or deviation <= 0.0:
