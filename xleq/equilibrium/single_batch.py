@@ -191,7 +191,8 @@ def _in_arrays(batch: Batch) -> Found | None:
 
 
 def _inert(batch: Batch, nu: Floats) -> Flags:
-    return np.array([phase == "fluid" for phase in batch.phases]) & (nu == 0.0)
+    inert: Flags = np.array([phase == "fluid" for phase in batch.phases]) & (nu == 0.0)
+    return inert
 
 
 def _from_nearer(
