@@ -8,7 +8,7 @@ or strict, come as bare local names; any other name as ``namespace local``.
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterator
 from dataclasses import dataclass, field
 from functools import lru_cache
 from typing import Final
@@ -101,7 +101,7 @@ def new_parser() -> expat.XMLParserType:
     return parser
 
 
-def feed(parser: expat.XMLParserType, part: str, chunks: Iterable[bytes]) -> None:
+def feed(parser: expat.XMLParserType, part: str, data: bytes) -> None:
     """Run a parser over a part.
 
     Raises
@@ -112,9 +112,7 @@ def feed(parser: expat.XMLParserType, part: str, chunks: Iterable[bytes]) -> Non
         If a handler found a limit exceeded.
     """
     try:
-        for chunk in chunks:
-            parser.Parse(chunk, False)
-        parser.Parse(b"", True)
+        parser.Parse(data, True)
     except expat.ExpatError as error:
         raise DamagedBookError(f"{part} is not well-formed XML: {error}") from error
     except (LookupError, ValueError) as error:  # raised for an encoding it does not know
@@ -164,7 +162,7 @@ def parse(data: bytes, part: str, depth: int) -> Node:
     parser.StartElementHandler = start
     parser.EndElementHandler = end
     parser.CharacterDataHandler = characters
-    feed(parser, part, (data,))
+    feed(parser, part, data)
     return top.children[0]
 
 

@@ -18,7 +18,6 @@ from xleq.workbook.limits import Limits
 from xleq.workbook.markup import Node, parse
 
 _COMPOUND_FILE: Final = bytes.fromhex("D0CF11E0A1B11AE1")
-_CHUNK: Final = 1 << 18
 _ENCRYPTED_FLAG: Final = 1
 #: What the zip reader raises on damaged archives; it has no error class of its own for all of it.
 _ZIP_ERRORS: Final = (
@@ -169,21 +168,15 @@ class Package:
             raise DamagedBookError(f"lacks its part {part!r}")
         return entry.filename
 
-    def chunks(self, part: str) -> Iterator[bytes]:
-        """Bytes of a member, piece by piece."""
+    def read(self, part: str) -> bytes:
+        """All bytes of a member."""
         entry = self._by_key[key_of(self.member(part))]
         try:
-            with self.zip.open(entry) as file:
-                while chunk := file.read(_CHUNK):
-                    yield chunk
+            return self.zip.read(entry)
         except OSError as error:
             raise BookError(f"cannot be read: {error.strerror or error}") from error
         except _ZIP_ERRORS as error:
             raise DamagedBookError(f"has a damaged member, {entry.filename!r}: {error}") from error
-
-    def read(self, part: str) -> bytes:
-        """All bytes of a member."""
-        return b"".join(self.chunks(part))
 
     def tree(self, part: str) -> Node:
         """A small XML part as a tree."""

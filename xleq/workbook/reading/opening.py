@@ -132,7 +132,7 @@ def _read_sheets(
     for index, tab in enumerate(read_tabs(package, workbook, part)):
         sheet = Sheet(tab.name, index, tab.part, tab.kind, tab.state, formats=formats)
         if tab.kind is SheetKind.WORKSHEET:
-            read_cells(sheet, package.chunks(tab.part), shared)
+            read_cells(sheet, package.read(tab.part), shared)
             _read_tables(package, sheet, tables)
         sheets.append(sheet)
     return tuple(sheets), tuple(tables)

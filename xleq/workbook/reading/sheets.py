@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import gc
 import math
-from collections.abc import Callable, Container, Iterable
+from collections.abc import Callable, Container
 from datetime import date, datetime, time
 from typing import Final, Protocol
 
@@ -348,15 +348,15 @@ def _data_table(attributes: dict[str, str]) -> DataTable:
     )
 
 
-def read_cells(sheet: Sheet, chunks: Iterable[bytes], shared: Shared) -> None:
+def read_cells(sheet: Sheet, data: bytes, shared: Shared) -> None:
     """Fill a sheet's cells, hidden rows and columns from its part.
 
     Parameters
     ----------
     sheet : Sheet
         With its name, index and part; the rest is filled in.
-    chunks : iterable of bytes
-        The part, piece by piece.
+    data : bytes
+        The whole part.
     shared : Shared
         Strings, marks, limits; its `n_cells` is advanced.
 
@@ -373,7 +373,7 @@ def read_cells(sheet: Sheet, chunks: Iterable[bytes], shared: Shared) -> None:
     collecting = gc.isenabled()
     gc.disable()  # hundreds of thousands of new tuples, none of them garbage
     try:
-        feed(parser, f"sheet {sheet.name!r}", chunks)
+        feed(parser, f"sheet {sheet.name!r}", data)
     finally:
         if collecting:
             gc.enable()

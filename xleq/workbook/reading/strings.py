@@ -56,5 +56,5 @@ def read_strings(package: Package, part: str) -> list[str]:
     parser.StartElementHandler = reader.start
     parser.EndElementHandler = reader.end
     parser.CharacterDataHandler = reader.characters
-    feed(parser, part, package.chunks(part))
+    feed(parser, part, package.read(part))
     return reader.strings

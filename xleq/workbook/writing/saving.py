@@ -162,7 +162,7 @@ def _changes(
         if edits:
             part = f"sheet {sheet.name!r}"
             data = patched(package.read(sheet.part), edits, part)
-            feed(new_parser(), part, (data,))  # a last look: what is written can be read
+            feed(new_parser(), part, data)  # a last look: what is written can be read
             changed[sheet.part] = data
             n_cells += len(edits)
     if recalculate_on_load is not None and book.calculation.full_calc_on_load != recalculate_on_load:
@@ -197,7 +197,7 @@ def with_recalculation(data: bytes, wanted: bool) -> bytes:
         depth -= 1
 
     parser.StartElementHandler, parser.EndElementHandler = start, end
-    feed(parser, "the workbook part", (data,))
+    feed(parser, "the workbook part", data)
     at = next((at for name, at in children if name == "calcPr"), None)
     if at is None:
         return _with_new_settings(data, children) if wanted else data

@@ -188,7 +188,7 @@ def scan(data: bytes, wanted_rows: Collection[int], part: str) -> Layout:
         If the sheet has no `sheetData`, or its cells stand where they cannot be written.
     """
     scanner = _Scanner(data, wanted_rows)
-    feed(scanner.parser, part, (data,))
+    feed(scanner.parser, part, data)
     if scanner.data is None:
         raise DamagedBookError(f"{part} has no cell data")
     tag = data[scanner.data.start + 1 : scanner.data.tag_end]
