@@ -20,8 +20,8 @@ def lines() -> list[dict[str, str]]:
 HEADS = [line for line in lines() if line["src_dHf"]]
 TABLE = standard_table()
 #: Pins of the data file, to be changed only together with it.
-N_SPECIES, N_LINES = 401, 614
-SUM_DHF, SUM_S, SUM_CP = 153688.223, 55671.012, 19958.164568229407
+N_SPECIES, N_LINES = 401, 621
+SUM_DHF, SUM_S, SUM_CP = 153688.222, 55671.026, 19946.236465890237
 
 
 def test_the_table_is_unchanged():

@@ -42,7 +42,13 @@ def _fit(t: Array, cp: Array, lows: Array, highs: Array, means: Array) -> tuple[
         [width, (x1**2 - x0**2) / 2, (x1**3 - x0**3) / 3, (x1**4 - x0**4) / 4, 1 / x0 - 1 / x1], axis=1
     )[:, order]
     rows = np.vstack([_basis(t, terms) / cp[:, None], integrals / (width * means)[:, None]])
-    solution = np.linalg.lstsq(rows, np.ones(len(rows)), rcond=None)[0]
+    weights = np.ones(len(rows))
+    if (
+        len(means) and terms > 1
+    ):  # the enthalpy of the whole interval is kept, whatever Cp does inside (λ peaks)
+        total = integrals.sum(axis=0) / float(np.sum(width * means))
+        rows, weights = np.vstack([rows, total]), np.append(weights, 1e4)
+    solution = np.linalg.lstsq(rows * weights[:, None], weights, rcond=None)[0]
     coefficients = [0.0] * 5
     for place, value in zip(order, solution, strict=True):
         coefficients[place] = float(f"{value:.7g}")

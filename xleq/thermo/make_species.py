@@ -45,6 +45,8 @@ ELEMENTS: Final = frozenset([*_GASES.split(), *(f"{m}(s)" for m in _METALS.split
 T_END: Final = {
     "Br2(l)": 332.503, "Hg(l)": 629.839, "Ca(s)": 1115.0, "Fe(s)": 1809.0, "S(s)": 388.36, "P(s)": 317.3,
     "C(s)": 4000.0, "Na2SO4(s)": 1157.0, "K2SO4(s)": 1342.0, "S(l)": 882.117,
+    "Ni(s)": 1728.0, "Li2CO3(s)": 993.15, "H3BO3(s)": 444.0, "FeS(s)": 1463.0, "Al2O3(s)": 2327.0,
+    "PbO(s)": 762.0, "TiO2(s)": 2130.0, "Cr2O3(s)": 2603.0,
 }  # fmt: skip
 
 #: Melting point below which the table of an element is that of its solid. [K]  NIST-JANAF.
