@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 
-from xleq.recalc.natives.gather import numbers_of
+from xleq.recalc.natives.gather import guarded, numbers_of
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument
 
@@ -114,12 +114,14 @@ def _whole_list(arguments: tuple[Argument, ...]) -> list[int]:
 
 
 @native("GCD", "list*")
+@guarded
 def gcd(*arguments: Argument) -> float:
     """Greatest common divisor."""
     return float(math.gcd(*_whole_list(arguments)))
 
 
 @native("LCM", "list*")
+@guarded
 def lcm(*arguments: Argument) -> float:
     """Least common multiple."""
     multiple = math.lcm(*_whole_list(arguments))
@@ -129,6 +131,7 @@ def lcm(*arguments: Argument) -> float:
 
 
 @native("MULTINOMIAL", "list*")
+@guarded
 def multinomial(*arguments: Argument) -> float:
     """Factorial of the sum over the product of the factorials."""
     total, ways = 0, 1

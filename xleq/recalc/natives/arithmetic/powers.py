@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from xleq.cells import CellError
 from xleq.recalc.natives.arithmetic.vectors import elementwise
+from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Array, Fail
 
@@ -101,6 +102,7 @@ def pi() -> float:
 
 
 @native("SERIESSUM", "number number number array")
+@guarded
 def seriessum(x: float, first: float, step: float, coefficients: Array) -> float:
     """Sum of a[i]·x^(first + i·step)."""
     total = 0.0

@@ -38,8 +38,8 @@ def normal_quantile(p: float) -> float:
 
     Examples
     --------
-    >>> round(normal_quantile(0.908789), 6)
-    1.333401
+    >>> round(normal_quantile(0.908789), 7)
+    1.3333347
     """
     if not 0.0 < p < 1.0:
         raise ValueError

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from xleq.cells import DIV0, NA
-from xleq.recalc.natives.gather import number_pairs, ratio
+from xleq.recalc.natives.gather import guarded, number_pairs, ratio
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Array, Fail
 
@@ -26,6 +26,7 @@ def _moments(xs: Array, ys: Array) -> _Moments:
 
 
 @native("CORREL PEARSON", "array array")
+@guarded
 def correl(xs: Array, ys: Array) -> float:
     """Correlation coefficient."""
     _, _, _, sxx, syy, sxy = _moments(xs, ys)
@@ -33,12 +34,14 @@ def correl(xs: Array, ys: Array) -> float:
 
 
 @native("RSQ", "array array")
+@guarded
 def rsq(ys: Array, xs: Array) -> float:
     """Square of the correlation coefficient."""
     return correl(xs, ys) ** 2
 
 
 @native("COVAR COVARIANCE.P", "array array")
+@guarded
 def covar(xs: Array, ys: Array) -> float:
     """Covariance of a population."""
     n, _, _, _, _, sxy = _moments(xs, ys)
@@ -46,6 +49,7 @@ def covar(xs: Array, ys: Array) -> float:
 
 
 @native("COVARIANCE.S", "array array")
+@guarded
 def covariance_s(xs: Array, ys: Array) -> float:
     """Covariance of a sample."""
     n, _, _, _, _, sxy = _moments(xs, ys)
@@ -53,6 +57,7 @@ def covariance_s(xs: Array, ys: Array) -> float:
 
 
 @native("SLOPE", "array array")
+@guarded
 def slope(ys: Array, xs: Array) -> float:
     """Slope of the straight line through the points."""
     _, _, _, sxx, _, sxy = _moments(xs, ys)
@@ -60,6 +65,7 @@ def slope(ys: Array, xs: Array) -> float:
 
 
 @native("INTERCEPT", "array array")
+@guarded
 def intercept(ys: Array, xs: Array) -> float:
     """Where the straight line meets x = 0."""
     _, mx, my, sxx, _, sxy = _moments(xs, ys)
@@ -76,6 +82,7 @@ def forecast(x: float, ys: Array, xs: Array) -> float:
 
 
 @native("STEYX", "array array")
+@guarded
 def steyx(ys: Array, xs: Array) -> float:
     """Standard error of the straight line."""
     n, _, _, sxx, syy, sxy = _moments(xs, ys)

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from xleq.cells import DIV0, NA, NUM
-from xleq.recalc.natives.gather import array_numbers, number_pairs, ratio
+from xleq.recalc.natives.gather import array_numbers, guarded, number_pairs, ratio
 from xleq.recalc.natives.statistics.continuous import f_dist, f_dist_rt, gamma_above, t_above
 from xleq.recalc.natives.statistics.normal import normal_below
 from xleq.recalc.natives.statistics.spread import variance
@@ -35,6 +35,7 @@ def _unpaired(xs: Array, ys: Array, *, same: bool) -> tuple[float, float]:
 
 
 @native("T.TEST TTEST", "array array number number")
+@guarded
 def t_test(xs: Array, ys: Array, tails: float, form: float) -> float:
     """Student's t test: 1 paired, 2 of one variance, 3 of two variances."""
     sides, kind = math.trunc(tails), math.trunc(form)
@@ -47,6 +48,7 @@ def t_test(xs: Array, ys: Array, tails: float, form: float) -> float:
 
 
 @native("F.TEST FTEST", "array array")
+@guarded
 def f_test(xs: Array, ys: Array) -> float:
     """Two-tailed chance that two variances differ by accident."""
     x, y = array_numbers(xs), array_numbers(ys)
@@ -58,6 +60,7 @@ def f_test(xs: Array, ys: Array) -> float:
 
 
 @native("CHISQ.TEST CHITEST", "array array")
+@guarded
 def chisq_test(actual: Array, expected: Array) -> float:
     """Chance of differences at least as large as between counts and expectations."""
     height, width = actual.height, actual.width
@@ -72,6 +75,7 @@ def chisq_test(actual: Array, expected: Array) -> float:
 
 
 @native("Z.TEST ZTEST", "array number number?")
+@guarded
 def z_test(array: Array, x: float, deviation: float | None = None) -> float:
     """Chance of a mean above that of the numbers where the true mean is x."""
     numbers = array_numbers(array)

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from xleq.cells import DIV0, NUM
-from xleq.recalc.natives.gather import finite, numbers_of, numbers_of_a, ratio
+from xleq.recalc.natives.gather import finite, guarded, numbers_of, numbers_of_a, ratio
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Fail
 
@@ -24,54 +24,63 @@ def variance(numbers: list[float], freedom: int) -> float:
 
 
 @native("VAR VAR.S", "list list*")
+@guarded
 def var(*arguments: Argument) -> float:
     """Variance of a sample."""
     return variance(numbers_of(arguments), 1)
 
 
 @native("VARP VAR.P", "list list*")
+@guarded
 def varp(*arguments: Argument) -> float:
     """Variance of a population."""
     return variance(numbers_of(arguments), 0)
 
 
 @native("VARA", "list list*")
+@guarded
 def vara(*arguments: Argument) -> float:
     """Variance of a sample, text as 0 and logicals as 0 and 1."""
     return variance(numbers_of_a(arguments), 1)
 
 
 @native("VARPA", "list list*")
+@guarded
 def varpa(*arguments: Argument) -> float:
     """Variance of a population, text as 0 and logicals as 0 and 1."""
     return variance(numbers_of_a(arguments), 0)
 
 
 @native("STDEV STDEV.S", "list list*")
+@guarded
 def stdev(*arguments: Argument) -> float:
     """Standard deviation of a sample."""
     return math.sqrt(variance(numbers_of(arguments), 1))
 
 
 @native("STDEVP STDEV.P", "list list*")
+@guarded
 def stdevp(*arguments: Argument) -> float:
     """Standard deviation of a population."""
     return math.sqrt(variance(numbers_of(arguments), 0))
 
 
 @native("STDEVA", "list list*")
+@guarded
 def stdeva(*arguments: Argument) -> float:
     """Standard deviation of a sample, text as 0 and logicals as 0 and 1."""
     return math.sqrt(variance(numbers_of_a(arguments), 1))
 
 
 @native("STDEVPA", "list list*")
+@guarded
 def stdevpa(*arguments: Argument) -> float:
     """Standard deviation of a population, text as 0 and logicals as 0 and 1."""
     return math.sqrt(variance(numbers_of_a(arguments), 0))
 
 
 @native("DEVSQ", "list list*")
+@guarded
 def devsq(*arguments: Argument) -> float:
     """Sum of squared deviations from the mean."""
     numbers = numbers_of(arguments)
@@ -81,6 +90,7 @@ def devsq(*arguments: Argument) -> float:
 
 
 @native("AVEDEV", "list list*")
+@guarded
 def avedev(*arguments: Argument) -> float:
     """Mean absolute deviation from the mean."""
     numbers = numbers_of(arguments)
@@ -97,6 +107,7 @@ def _standard_moment(numbers: list[float], power: int, freedom: int) -> float:
 
 
 @native("SKEW", "list list*")
+@guarded
 def skew(*arguments: Argument) -> float:
     """Skewness of a sample."""
     numbers = numbers_of(arguments)
@@ -107,6 +118,7 @@ def skew(*arguments: Argument) -> float:
 
 
 @native("SKEW.P", "list list*")
+@guarded
 def skew_p(*arguments: Argument) -> float:
     """Skewness of a population."""
     numbers = numbers_of(arguments)
@@ -116,6 +128,7 @@ def skew_p(*arguments: Argument) -> float:
 
 
 @native("KURT", "list list*")
+@guarded
 def kurt(*arguments: Argument) -> float:
     """Excess kurtosis of a sample."""
     numbers = numbers_of(arguments)
