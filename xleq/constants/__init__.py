@@ -20,10 +20,11 @@ from xleq.constants.bases import (
     pressure_size,
 )
 from xleq.constants.cells import read_k, write_k
-from xleq.constants.fits import Fit, dh_from_fit, fit_ln_k, ln_k_from_fit, u_ln_k_from_fit
+from xleq.constants.fits import TERMS, Fit, dh_from_fit, fit_ln_k, ln_k_from_fit, u_ln_k_from_fit
 
 __all__ = [
     "STANDARD",
+    "TERMS",
     "Basis",
     "Fit",
     "affinity",

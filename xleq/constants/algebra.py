@@ -167,7 +167,9 @@ def affinity(ln_k: float, ln_q: float, t: float) -> float:
     return R * t * (ln_k - ln_q) / 1000.0
 
 
-def ln_quotient(reaction: Reaction, ln_activities: Mapping[Species, float]) -> float:
+def ln_quotient(
+    reaction: Reaction, ln_activities: Mapping[Species, float], mixed_liquid: bool = False
+) -> float:
     """Ln of the reaction quotient; pure phases and electrons are left out.
 
     Parameters
@@ -176,6 +178,8 @@ def ln_quotient(reaction: Reaction, ln_activities: Mapping[Species, float]) -> f
         With the phase of every species known.
     ln_activities : mapping of Species to float
         ln a of every species that counts; -inf for one that is absent. [-]
+    mixed_liquid : bool
+        Whether the liquids are one mixture, and so not pure.
 
     Returns
     -------
@@ -200,7 +204,7 @@ def ln_quotient(reaction: Reaction, ln_activities: Mapping[Species, float]) -> f
     terms: list[float] = []
     absent: list[Species] = []
     for species, nu in zip(reaction.species, reaction.nu, strict=True):
-        if not nu or species.pure or species.electron:
+        if not nu or species.electron or (species.pure and not (mixed_liquid and species.phase == "l")):
             continue
         if species not in ln_activities:
             raise InputError(f"{species.text} takes part in {reaction.text!r}, but its amount is not given")

@@ -17,7 +17,7 @@ _LABEL: Final = re.compile(r"\s*(K°?|Kp|Kc|Kx)\s*(\[[^\[\]]*\])?\s*")
 
 @lru_cache(maxsize=16384)
 def natural_phases(text: str) -> Reaction:
-    """A reaction whose species without a phase are gases, or solutes (water: the solvent) if an ion takes part.
+    """A reaction whose species without a phase are gases, or solutes if an ion takes part (water: solvent).
 
     For functions that are neither of gases nor of solutions. Where a dissolved species is marked `(aq)`, a
     neutral one without a phase could be either, and is refused.
