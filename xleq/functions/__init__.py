@@ -7,12 +7,12 @@ from collections.abc import Sequence
 from typing import Final
 
 from xleq.cells import NAME, CellError, Grid, Value
-from xleq.functions import composition, program, reactions
+from xleq.functions import composition, constants, program, reactions
 from xleq.functions.table import Argument, Example, Function, Given, Memory
 
 #: Every worksheet function by name, in the order of the reference.
 TABLE: Final[dict[str, Function]] = {
-    f.name: f for topic in (reactions, composition, program) for f in topic.FUNCTIONS
+    f.name: f for topic in (reactions, constants, composition, program) for f in topic.FUNCTIONS
 }
 
 _MEMORY: Final = Memory()
