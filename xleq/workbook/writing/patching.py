@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from collections import defaultdict
 from collections.abc import Iterator
+from operator import itemgetter
 from typing import Final, NamedTuple
 from xml.parsers import expat
 
@@ -60,10 +61,14 @@ def patched(data: bytes, edits: dict[Place, Edit], part: str) -> bytes:
         by_row[row][column] = edit
     layout = scan(data, by_row.keys(), part)
     pieces = [*_row_pieces(data, layout, by_row, part), *_dimension_piece(data, layout, edits)]
-    pieces.sort()
+    return _joined(data, pieces)
+
+
+def _joined(data: bytes, pieces: list[Piece]) -> bytes:
+    """The bytes with pieces replaced; pieces at one place follow one another as they are listed."""
     out: list[bytes] = []
     at = 0
-    for piece in pieces:
+    for piece in sorted(pieces, key=itemgetter(0, 1)):
         out += (data[at : piece.start], piece.text)
         at = piece.end
     return b"".join((*out, data[at:]))
@@ -184,24 +189,46 @@ def _new_cell(layout: Layout, row: int, column: int, edit: Edit, row_style: str)
 def _edited(raw: bytes, edit: Edit) -> bytes:
     """A cell's bytes with its edit made."""
     match = _USUAL.fullmatch(raw)
-    if match is not None:
-        prefix, attributes, formula = match[1], match[2], match[3] or b""
-        rest = b""
-        kept = _TYPE.sub(b"", attributes) if edit.value is not None else attributes
-    else:
-        prefix, attributes, formula, rest = _dissected(raw)
-        drop = (b"t", b"vm") if edit.value is not None else ()
-        kept = b"".join(m[0] for m in _ATTRIBUTE.finditer(attributes) if m[1] not in drop)
+    if match is None or edit.value is None:
+        return _edited_by_parts(raw, edit)
+    prefix, attributes, formula = match[1], _TYPE.sub(b"", match[2]), match[3] or b""
     if edit.area is not None:
         formula = _with_area(formula, edit.area)
-        if edit.value is None:
-            return raw.replace(match[3], formula, 1) if match is not None else _replaced(raw, formula)
-    assert edit.value is not None
     kind, value = (constant_markup_of if edit.role is Role.CONSTANT else markup_of)(edit.value, prefix)
-    inside = formula + value + rest
-    if not inside:
-        return b"<%bc%b%b/>" % (prefix, kept, kind)
-    return b"<%bc%b%b>%b</%bc>" % (prefix, kept, kind, inside, prefix)
+    if formula or value:
+        return b"<%bc%b%b>%b%b</%bc>" % (prefix, attributes, kind, formula, value, prefix)
+    return b"<%bc%b%b/>" % (prefix, attributes, kind)
+
+
+def _edited_by_parts(raw: bytes, edit: Edit) -> bytes:
+    """As `_edited`, for a cell that is written unusually: white space, comments, extensions stay."""
+    tag = START_TAG.match(raw)
+    if tag is None:
+        raise DamagedBookError("has a cell whose bytes cannot be taken apart")
+    empty = tag[0].endswith(b"/>")
+    name_end = next(at for at, byte in enumerate(raw) if byte in b" \t\r\n/>")
+    prefix = raw[1 : name_end - 1]
+    tag_end = tag.end() - (2 if empty else 1)
+    children = [] if empty else _children(raw)
+    pieces: list[Piece] = []
+    formula = next((Piece(start, end, raw[start:end]) for name, start, end in children if name == "f"), None)
+    if edit.area is not None and formula is not None:
+        pieces.append(formula._replace(text=_with_area(formula.text, edit.area)))
+    if edit.value is not None:
+        kind, value = (constant_markup_of if edit.role is Role.CONSTANT else markup_of)(edit.value, prefix)
+        attributes = (m for m in _ATTRIBUTE.finditer(raw, name_end, tag_end) if m[1] in {b"t", b"vm"})
+        pieces += (Piece(m.start(), m.end(), b"") for m in attributes)
+        pieces.append(Piece(tag_end, tag_end, kind))
+        old = [(start, end) for name, start, end in children if name in {"v", "is"}]
+        if empty and value:
+            pieces.append(Piece(tag_end, len(raw), b">%b</%bc>" % (value, prefix)))
+        elif not old and not empty:
+            at = formula.end if formula is not None else tag.end()
+            pieces.append(Piece(at, at, value))
+        for start, end in old:
+            pieces.append(Piece(start, end, value))
+            value = b""
+    return _joined(raw, pieces)
 
 
 def _with_area(formula: bytes, area: Area) -> bytes:
@@ -209,26 +236,6 @@ def _with_area(formula: bytes, area: Area) -> bytes:
     if area.n_cells > 1:
         text += ":" + address_text(area.bottom, area.right)
     return _REF.sub(rb'\g<1>"%b"' % text.encode(), formula, count=1)
-
-
-def _dissected(raw: bytes) -> tuple[bytes, bytes, bytes, bytes]:
-    """Prefix, attributes, formula and the rest (without value) of a cell written unusually."""
-    spans = _children(raw)
-    tag = re.match(rb"<((?:[\w.-]+:)?)c((?:\s+[\w.:-]+\s*=\s*(?:\"[^\"]*\"|'[^']*'))*)", raw)
-    if tag is None:
-        raise DamagedBookError("has a cell whose bytes cannot be taken apart")
-    formula = rest = b""
-    for name, start, end in spans:
-        if name == "f":
-            formula = raw[start:end]
-        elif name not in {"v", "is"}:
-            rest += raw[start:end]
-    return tag[1], tag[2], formula, rest
-
-
-def _replaced(raw: bytes, formula: bytes) -> bytes:
-    start, end = next((start, end) for name, start, end in _children(raw) if name == "f")
-    return raw[:start] + formula + raw[end:]
 
 
 def _children(raw: bytes) -> list[tuple[str, int, int]]:
