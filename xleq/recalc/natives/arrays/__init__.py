@@ -1,0 +1,1 @@
+"""Arrays: made, filtered, sorted, cut and put together."""
