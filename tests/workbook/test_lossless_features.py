@@ -43,9 +43,9 @@ def fill_inputs(book: xlsxwriter.Workbook, sheet: Worksheet) -> None:
         sheet.write_formula(row, 2, f"=A{row + 1}/B{row + 1}/100", percent, 0.04)
         sheet.write_formula(row, 3, f'="row "&{row}', None, f"row {row}")
     sheet.write_rich_string("F1", "N", book.add_format({"font_script": 2}), "2", " feed")
-    sheet.write_dynamic_array_formula("H2:H4", "=SEQUENCE(3)", None, 1)
-    sheet.write("H3", 2)
-    sheet.write("H4", 3)
+    sheet.write_dynamic_array_formula("H2:H4", "=ROW(A2:A6)", None, 2)
+    sheet.write("H3", 3)
+    sheet.write("H4", 4)
     sheet.write_array_formula("I2:I4", "{=B2:B4*2}", percent, 202)
     sheet.write_formula("J2", "=LET(a,A2,a*2)", None, 820)
     sheet.write_boolean("J3", True)
@@ -148,7 +148,7 @@ def test_a_book_with_every_feature_keeps_all_of_them(rich: Path) -> None:
             assert canonical(a.read(sheet.part)) == canonical(b.read(sheet.part))
         changed = b.read(book.workbook_part)
         assert changed == a.read(book.workbook_part).replace(b' fullCalcOnLoad="1"', b"")
-        assert len(b.namelist()) > 40
+        assert len(b.namelist()) > 35
     again = open_book(new)
     for index, found in results.items():
         assert {p: again.sheets[index].stored.get(p, BLANK) for p in found.values} == found.values
