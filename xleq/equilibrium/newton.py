@@ -1,9 +1,9 @@
 """Newton's method in log moles for a fluid, with a given set of pure phases present.
 
 The unknowns are ln n of a basis of the fluid and ln of its total amount. Each balance is solved in the form
-ln(all that adds) = ln(all that takes away), and the basis is always that of the most abundant species: then no
-term of a balance exceeds what it is balanced against by more than its coefficient, traces are as exact as the
-bulk, and nothing overflows whatever the constants are.
+ln(all that adds) = ln(all that takes away), and the basis is always that of the most abundant species: then
+no term of a balance exceeds what it is balanced against by more than its coefficient, traces are as exact
+as the bulk, and nothing overflows whatever the constants are.
 """
 
 from __future__ import annotations
@@ -123,7 +123,7 @@ def frame(system: System, ln_n: Floats) -> Frame | None:
     if any(totals[len(basis) :]):
         return None
     d = float(e.denominator)
-    recipe = -e.rows[np.ix_(rows, basis)].astype(np.float64) / d
+    recipe = -e.rows[rows][:, basis].astype(np.float64) / d
     ln_k = e.combos[rows].astype(np.float64) @ system.ln_k / d
     s, n_basis = system.per_total, len(basis)
     excess = recipe.sum(axis=1) - 1.0
@@ -216,6 +216,8 @@ def newton(system: System, ln_n: Floats, max_steps: int = MAX_STEPS) -> Path | N
         except np.linalg.LinAlgError:
             change = np.linalg.lstsq(slope, -value, rcond=None)[0]
         longest = float(np.abs(change).max(initial=0.0))
+        if not np.isfinite(longest):
+            return Path(f, x, False, step)
         if longest > LONGEST_STEP:
             change *= LONGEST_STEP / longest
         x = x + change
@@ -234,7 +236,7 @@ def start(system: System, f: Frame, ln_n: Floats) -> Floats:
 
 
 def ln_amounts(system: System, path: Path) -> Floats:
-    """Ln n [n_species] that a path has come to; pure phases and absent species are 0 there. [-]"""
+    """Ln n [n_species] that a path has come to; pure phases and absent species are 0 there [-]."""
     f = path.frame
     full = np.zeros(len(system.n0))
     at = f.offset + f.linear @ path.x

@@ -1,8 +1,8 @@
 """Departure from ideal: activity coefficients and composition brought to agree by Newton's method.
 
-With ln gamma held fixed the problem is convex and solved as if ideal. Outside it, Newton's method makes ln gamma
-that of the composition it leads to: the composition's answer to ln gamma comes from the converged Jacobian, the
-model's answer to the composition from finite differences.
+With ln gamma held fixed the problem is convex and solved as if ideal. Outside it, Newton's method makes ln
+gamma that of the composition it leads to: the composition's answer to ln gamma comes from the converged
+Jacobian, the model's answer to the composition from finite differences.
 """
 
 from __future__ import annotations
@@ -91,7 +91,7 @@ def _agree(model: Nonideality, state: State, system: System, pure: NDArray[np.in
 
 
 def _composition(o: Outcome, fluid: NDArray[np.intp]) -> Floats:
-    """Amounts of the fluid, or its composition where it has vanished. [mol]"""
+    """Amounts of the fluid, or its composition where it has vanished [mol]."""
     assert o.amounts is not None
     n = np.zeros(len(o.amounts.n))
     n[fluid] = np.exp(np.maximum(o.amounts.ln_n[fluid], -690.0))

@@ -1,21 +1,22 @@
 """Which pure solids and liquids are present: sets of them are tried, and the one without contradiction is it.
 
-A pure phase that is present has activity 1 and an amount of at least 0; one that is absent has no driving force
-to form. The free energy is convex, so a set that satisfies both for every phase is the answer, however it was
-come by.
+A pure phase that is present has activity 1 and an amount of at least 0; one that is absent has no driving
+force to form. The free energy is convex, so a set that satisfies both for every phase is the answer,
+however it was come by.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
-from itertools import combinations
+from itertools import combinations, islice
 from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
 
-from xleq.equilibrium.newton import MAX_STEPS, Frame, Path, System, continuation, frame, ln_amounts, newton
+from xleq.equilibrium.follow import NO_DRIVE, contradiction, first_guess, follow, with_phases
+from xleq.equilibrium.newton import MAX_STEPS, Frame, Path, System, continuation, frame, newton
 from xleq.equilibrium.polish import Polished, polish
 from xleq.equilibrium.structure import exact_totals
 
@@ -24,8 +25,6 @@ Verdict = Literal["found", "vanished", "impossible", "indeterminate", "failed"]
 
 #: Sets of phases that are tried before giving up.
 MAX_SETS = 600
-#: Driving forces and differences from saturation below this are taken to be none. [-]
-NO_DRIVE = 1e-9
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,20 +48,6 @@ class Outcome:
     amounts: Polished | None = None
     system: System | None = None
     path: Path | None = None
-
-
-def first_guess(system: System) -> Floats:
-    """Ln n [n_species] to start from: the feed, with a ten-thousandth of it for what is not fed."""
-    n0 = np.array(system.n0)
-    floor = 1e-4 * float(n0.sum()) or 1e-4
-    return np.asarray(np.log(np.maximum(n0, floor)))
-
-
-def with_phases(system: System, pure: NDArray[np.intp], present: frozenset[int]) -> System:
-    """The system with just these of its pure phases present."""
-    here = np.array(sorted(present), dtype=np.intp)
-    away = np.array([p for p in pure if p not in present], dtype=np.intp)
-    return replace(system, present=here, gone=np.concatenate([system.gone, away]))
 
 
 def solve_set(
@@ -99,22 +84,33 @@ def _solve(system: System, present: frozenset[int], ln_n: Floats, hard: bool) ->
         return Outcome("impossible", present, 0)
     steps = path.steps
     done = polish(system, path) if path.converged else None
-    if done is None and hard:
-        path = continuation(system, ln_n)
+    for attempt in _attempts(system, ln_n) if hard and done is None else ():
+        path = attempt()
         if path is not None:
             steps += path.steps
             done = polish(system, path) if path.converged else None
+        if done is not None:
+            break
     if done is None:
         return Outcome("failed", present, steps)
     return Outcome("found", present, steps, done, system, path)
 
 
+def _attempts(system: System, ln_n: Floats) -> Iterator[Callable[[], Path | None]]:
+    """Other ways to an equilibrium: led there, or from where one species rules."""
+    yield lambda: continuation(system, ln_n)
+    for i in system.fluid.tolist():
+        ruled = ln_n - 15.0
+        ruled[i] = ln_n.max()
+        yield lambda start=ruled: newton(system, start, MAX_STEPS // 2)  # type: ignore[misc]
+
+
 def _without_inert(system: System, present: frozenset[int], f: Frame, ln_n: Floats) -> Outcome:
     """A fluid that the phases present could take up wholly: it vanishes, or the set is wrong.
 
-    At fixed pressure such a fluid has a composition but no amount. If its partial pressures would sum to less
-    than the pressure it vanishes; if to more, some phase is used up; if to just the pressure, any amount of it
-    is in equilibrium.
+    At fixed pressure such a fluid has a composition but no amount. If its partial pressures would sum to
+    less than the pressure it vanishes; if to more, some phase is used up; if to just the pressure, any
+    amount of it is in equilibrium.
     """
     loose = replace(system, per_total=0)
     if len(f.basis):
@@ -143,45 +139,54 @@ def _amounts_alone(system: System, f: Frame) -> list[float]:
     return [x / denominator for x in totals]
 
 
-def contradiction(o: Outcome, pure: NDArray[np.intp]) -> tuple[int, bool] | None:
-    """The worst phase of a set and whether it is to be added (else dropped); None if the set is right."""
-    if o.amounts is None:
-        return None
-    present = sorted(o.present)
-    scale = float(np.abs(o.amounts.n).max(initial=0.0))
-    negative = [p for p in present if o.amounts.n[p] < -1e-15 * scale]
-    if negative:
-        return min(negative, key=lambda p: float(o.amounts.n[p]) if o.amounts else 0.0), False
-    eager = [p for p in pure.tolist() if p not in o.present and o.amounts.drive[p] > NO_DRIVE]
-    if eager:
-        return max(eager, key=lambda p: float(o.amounts.drive[p]) if o.amounts else 0.0), True
-    return None
-
-
 def choose(base: System, pure: NDArray[np.intp]) -> Outcome:
     """The set of pure phases that contradicts nothing, and the equilibrium with it.
 
-    Phases are dropped and added one by one, worst first, from those that are fed; if that comes to no end, the
-    sets are tried in turn, nearest first, up to `MAX_SETS`.
+    Phases are dropped and added one by one, worst first, from those that are fed. If that comes to no end,
+    the set is followed from an easy equilibrium to the one wanted; if that fails too, the sets are tried in
+    turn, nearest first, up to `MAX_SETS`.
     """
-    ln_n = first_guess(base)
-    present = frozenset(int(p) for p in pure if base.n0[p] > 0.0)
     tried: dict[frozenset[int], Outcome] = {}
-    steps = 0
-    while present not in tried and len(tried) < 4 * len(pure) + 4:
-        o = solve_set(base, pure, present, ln_n, hard=False)
-        steps += o.steps
+    ln_n = first_guess(base)
+    fed = frozenset(int(p) for p in pure if base.n0[p] > 0.0)
+    done = _exchange(base, pure, fed, ln_n, tried)
+    if done is None and len(pure):
+        led, at = follow(base, pure, ln_n)
+        if led is not None:
+            done = _exchange(base, pure, led, at, tried)
+    if done is None:
+        done = _search(base, pure, fed, tried, ln_n)
+    steps = sum(o.steps for o in tried.values())
+    if done is None:
+        return Outcome("failed", fed, steps)
+    return replace(_settled(base, pure, done), steps=steps)
+
+
+def _exchange(
+    base: System,
+    pure: NDArray[np.intp],
+    present: frozenset[int],
+    ln_n: Floats,
+    tried: dict[frozenset[int], Outcome],
+) -> Outcome | None:
+    """Drop and add phases, worst first; None if a set comes again or cannot be solved."""
+    for _ in range(4 * len(pure) + 4):
+        known = tried.get(present)
+        if known is not None and known.verdict != "failed":
+            return None
+        o = solve_set(base, pure, present, ln_n, hard=not len(pure))
         tried[present] = o
         if o.verdict == "indeterminate":
-            return replace(o, steps=steps)
+            return o
         if o.amounts is None:
-            break
-        worst = contradiction(o, pure)
+            return None
+        worst = contradiction(o.amounts.n, o.amounts.drive, present, pure)
         if worst is None:
-            return _settled(base, pure, replace(o, steps=steps), ln_n)
-        phase, add = worst
-        present = present | {phase} if add else present - {phase}
-    return _search(base, pure, present, tried, steps, ln_n)
+            return o
+        present = present.symmetric_difference({worst})
+        if o.verdict == "found":
+            ln_n = o.amounts.ln_n
+    return None
 
 
 def _search(
@@ -189,32 +194,21 @@ def _search(
     pure: NDArray[np.intp],
     near: frozenset[int],
     tried: dict[frozenset[int], Outcome],
-    steps: int,
     ln_n: Floats,
-) -> Outcome:
+) -> Outcome | None:
     """Try set after set, quickly first and thoroughly then."""
-    uncertain = [s for s, o in tried.items() if o.verdict == "failed"]
-    count = 0
-    for present in _sets(pure, near):
-        if present in tried:
-            continue
-        count += 1
-        if count > MAX_SETS:
-            break
-        o = solve_set(base, pure, present, ln_n, hard=False)
-        steps += o.steps
-        if o.verdict == "indeterminate":
-            return replace(o, steps=steps)
-        if o.verdict == "failed":
-            uncertain.append(present)
-        elif o.amounts is not None and contradiction(o, pure) is None:
-            return _settled(base, pure, replace(o, steps=steps), ln_n)
-    for present in uncertain:
-        o = solve_set(base, pure, present, ln_n, hard=True)
-        steps += o.steps
-        if o.amounts is not None and contradiction(o, pure) is None:
-            return _settled(base, pure, replace(o, steps=steps), ln_n)
-    return Outcome("failed", near, steps)
+    for hard in (False, True):
+        for present in islice(_sets(pure, near), MAX_SETS):
+            known = tried.get(present)
+            if known is not None and (known.verdict != "failed" or not hard):
+                continue
+            o = solve_set(base, pure, present, ln_n, hard)
+            tried[present] = o
+            if o.verdict == "indeterminate":
+                return o
+            if o.amounts is not None and contradiction(o.amounts.n, o.amounts.drive, present, pure) is None:
+                return o
+    return None
 
 
 def _sets(pure: NDArray[np.intp], near: frozenset[int]) -> Iterator[frozenset[int]]:
@@ -225,7 +219,7 @@ def _sets(pure: NDArray[np.intp], near: frozenset[int]) -> Iterator[frozenset[in
             yield near.symmetric_difference(change)
 
 
-def _settled(base: System, pure: NDArray[np.intp], o: Outcome, ln_n: Floats) -> Outcome:
+def _settled(base: System, pure: NDArray[np.intp], o: Outcome) -> Outcome:
     """The outcome, or indeterminate if a phase that is just saturated could be there in any amount."""
     if o.amounts is None:
         return o
@@ -233,7 +227,7 @@ def _settled(base: System, pure: NDArray[np.intp], o: Outcome, ln_n: Floats) -> 
         if p in o.present or abs(float(o.amounts.drive[p])) > NO_DRIVE:
             continue
         with_it = with_phases(base, pure, o.present | {p})
-        f = frame(with_it, ln_n)
+        f = frame(with_it, o.amounts.ln_n)
         if f is None or (with_it.per_total and not any(f.exact[0])):
             return replace(o, verdict="indeterminate")
     return o

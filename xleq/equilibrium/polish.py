@@ -1,8 +1,8 @@
 """The last digits: a converged fluid solved again in fifty decimal digits.
 
-A double holds sixteen digits, and where a species is a small difference of large ones they are not enough. The
-feed and the constants are taken as the exact numbers that they are, the residual is computed in fifty digits,
-and the Jacobian of the double solution brings it to nothing in a few corrections.
+A double holds sixteen digits, and where a species is a small difference of large ones they are not enough.
+The feed and the constants are taken as the exact numbers that they are, the residual is computed in fifty
+digits, and the Jacobian of the double solution brings it to nothing in a few corrections.
 """
 
 from __future__ import annotations
@@ -20,7 +20,10 @@ Floats = NDArray[np.float64]
 
 _DIGITS = Context(prec=50, Emin=-999999999, Emax=999999999)
 _MAX_CORRECTIONS = 12
-_SMALL_ENOUGH = 1e-26
+#: Error of ln n that is left in the end. [-]
+_SMALL_ENOUGH = 1e-18
+#: A fluid species above this many times the feed is no amount but a flight to infinity.
+_TOO_MUCH = 1e20
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,9 +57,11 @@ def polish(system: System, path: Path) -> Polished | None:
             inverse = np.linalg.inv(slope) if len(x) else slope
         except np.linalg.LinAlgError:
             return None
+        # What one correction leaves of an error: the inverse is good to some digits only.
+        leaves = 1e-13 * float(np.abs(inverse).sum()) * float(np.abs(slope).sum())
         last = np.inf
         for _ in range(_MAX_CORRECTIONS):
-            value, ln_n = model.residual(x)
+            value = model.residual(x)
             if not np.isfinite(value).all():
                 return None
             change = inverse @ value
@@ -65,11 +70,13 @@ def polish(system: System, path: Path) -> Polished | None:
                 return None
             x = [v - Decimal(float(c)) for v, c in zip(x, change, strict=True)]
             last = size
-            if size < _SMALL_ENOUGH:
+            if size * (leaves + size) < _SMALL_ENOUGH:
                 break
         else:
             return None
-        _, ln_n = model.residual(x)
+        ln_n = x[: len(f.basis)] + model.ln_made(x)
+        if ln_n and max(ln_n).exp() > Decimal(_TOO_MUCH * sum(system.n0)):
+            return None
         return model.finish(x, ln_n)
 
 
@@ -121,8 +128,8 @@ class _Exact:
             out.append(value)
         return out
 
-    def residual(self, x: list[Decimal]) -> tuple[Floats, list[Decimal]]:
-        """Residual as doubles (it is small), and ln n of basis and made species."""
+    def residual(self, x: list[Decimal]) -> Floats:
+        """The residual, small enough for doubles."""
         made = self.ln_made(x)
         n_basis = len(self.f.basis)
         ln_n = x[:n_basis] + made
@@ -137,10 +144,10 @@ class _Exact:
                         adds += v * amount
                     else:
                         takes -= v * amount
-            out.append((adds / takes).ln())
+            out.append((adds / takes).ln() if adds and takes else Decimal("nan"))
         if self.system.per_total:
             out.append(sum(n, Decimal(0)).ln() - x[-1])
-        return np.array([float(v) for v in out]), ln_n
+        return np.array([float(v) for v in out])
 
     def finish(self, x: list[Decimal], ln_n: list[Decimal]) -> Polished:
         f, system = self.f, self.system

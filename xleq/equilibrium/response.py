@@ -112,6 +112,6 @@ class Response:
         out = np.zeros((len(system.n0), ln_n.shape[1]))
         out[f.made] = made
         out[f.basis] = totals - f.recipe.T @ made
-        rows = f.elimination.rows[np.ix_(list(f.rows_of_made), system.present.tolist())].astype(np.float64)
+        rows = f.elimination.rows[list(f.rows_of_made)][:, system.present].astype(np.float64)
         out[system.present] = present + rows.T @ made / f.elimination.denominator
         return out
