@@ -175,6 +175,8 @@ def _blank(text: str, i: int, end: int) -> int:
 
 def _term(text: str, i: int, end: int, default_phase: Phase | None) -> tuple[Term, int]:
     coefficient, i = _coefficient(text, i, end)
+    if text.startswith(("-", "−"), i):
+        raise ParseError(text, i, "a species; one that is used up stands on the left, without a minus")
     match = _SPECIES.match(text, i, end)
     if match is None:
         if text.startswith("{", i):
