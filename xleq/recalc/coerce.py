@@ -9,6 +9,7 @@ from xleq.recalc.texts import number_text, parse_number
 
 #: Order of punctuation in the spreadsheet's collation; hyphen and apostrophe count least.
 _PUNCTUATION: Final = "'- !\"#$%&()*,./:;?@[\\]^_`{|}~+<=>"
+_NOT_A_VALUE: Final = CellError("#VALUE!", "a function stands where a value is wanted")
 _COLLATION: Final = str.maketrans({c: chr(1 + i) for i, c in enumerate(_PUNCTUATION)})
 
 
@@ -28,7 +29,7 @@ def to_number(value: Value) -> float | CellError:
     if kind is str:
         number = parse_number(value)  # type: ignore[arg-type]
         return CellError("#VALUE!", f"{_short(str(value))} is not a number") if number is None else number
-    return 0.0
+    return 0.0 if kind is Blank else _NOT_A_VALUE
 
 
 def to_text(value: Value) -> str | CellError:
@@ -43,10 +44,10 @@ def to_text(value: Value) -> str | CellError:
     if kind is str or kind is CellError:
         return value  # type: ignore[return-value]
     if kind is float:
-        return number_text(value)  # type: ignore[arg-type]
+        return number_text(value)
     if kind is bool:
         return "TRUE" if value else "FALSE"
-    return ""
+    return "" if kind is Blank else _NOT_A_VALUE
 
 
 def to_logical(value: Value) -> bool | CellError:
@@ -63,11 +64,11 @@ def to_logical(value: Value) -> bool | CellError:
     if kind is float:
         return value != 0.0
     if kind is str:
-        word = value.upper()  # type: ignore[union-attr]
+        word = str(value).upper()
         if word in ("TRUE", "FALSE"):
             return word == "TRUE"
         return CellError("#VALUE!", f"{_short(str(value))} is neither TRUE nor FALSE")
-    return False
+    return False if kind is Blank else _NOT_A_VALUE
 
 
 def _short(text: str) -> str:

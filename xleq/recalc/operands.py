@@ -47,7 +47,7 @@ class Array:
         The values row by row; `height * width` of them.
     """
 
-    __slots__ = ("_flat", "_index", "_kinds", "_numbers", "height", "width")
+    __slots__ = ("_codes", "_flat", "_index", "_kinds", "_numbers", "_runs", "height", "width")
 
     def __init__(self, height: int, width: int, flat: Sequence[Value]) -> None:
         self.height = height
@@ -56,6 +56,8 @@ class Array:
         self._numbers: NDArray[np.float64] | None = None
         self._kinds: NDArray[np.uint8] | None = None
         self._index: dict[object, int] | None = None
+        self._runs: dict[int, tuple[list[int], list[Value]]] | None = None
+        self._codes: NDArray[np.int64] | None = None
 
     @classmethod
     def of_rows(cls, rows: Sequence[Sequence[Value]]) -> Array:
@@ -134,7 +136,7 @@ class Array:
         logical = kinds == LOGICAL_KIND
         if logical.any():
             flat = self.flat
-            positions = np.flatnonzero(logical)
+            positions = np.flatnonzero(logical).tolist()
             values.reshape(-1)[positions] = [float(bool(flat[i])) for i in positions]
         return values
 
@@ -146,6 +148,26 @@ class Array:
                 found.setdefault(lookup_key(value), position)
             self._index = found
         return self._index
+
+    def codes(self) -> NDArray[np.int64]:
+        """int64 [height, width]: at each place the position of the first value with the same key."""
+        if self._codes is None:
+            import numpy as np
+
+            index = self.index()
+            codes = np.array([index[lookup_key(v)] for v in self.flat], np.int64)
+            self._codes = codes.reshape(self.height, self.width)
+        return self._codes
+
+    def run(self, kind: int) -> tuple[list[int], list[Value]]:
+        """Positions, row by row, and values of one kind alone: what a search for that kind runs over."""
+        if self._runs is None:
+            self._runs = {}
+        found = self._runs.get(kind)
+        if found is None:
+            pairs = [(i, v) for i, v in enumerate(self.flat) if _KIND_OF.get(type(v), BLANK_KIND) == kind]
+            found = self._runs[kind] = [i for i, _ in pairs], [v for _, v in pairs]
+        return found
 
     def first_error(self) -> CellError | None:
         """The first error value, row by row, if there is one."""
@@ -168,7 +190,7 @@ def lookup_key(value: Value) -> object:
     """
     kind = type(value)
     if kind is str:
-        return value.lower()  # type: ignore[union-attr]
+        return str(value).lower()
     if kind is bool:
         return (value,)
     return value
@@ -192,9 +214,11 @@ class Computed(Array):
         self._numbers = None
         self._kinds = None
         self._index = None
+        self._runs = None
+        self._codes = None
 
     def _unpack(self) -> Sequence[Value]:
-        return self._data.ravel().tolist()  # type: ignore[no-any-return]
+        return self._data.ravel().tolist()
 
     def _split(self) -> None:
         import numpy as np

@@ -293,7 +293,7 @@ class _Parser:
             self.move()
             node = Infix(",", node, self.expression(0))
         self.expect(")")
-        return node
+        return Prefix("(", node)
 
     def arguments(self) -> tuple[Node, ...]:
         self.expect("(")

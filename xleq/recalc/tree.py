@@ -90,7 +90,7 @@ class Structured:
 
 @dataclass(frozen=True, slots=True)
 class Prefix:
-    """``-``, ``+`` or ``@`` before an expression."""
+    """``-``, ``+`` or ``@`` before an expression, or ``(`` for brackets around it."""
 
     operator: str
     operand: Node
