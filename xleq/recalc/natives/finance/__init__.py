@@ -1,0 +1,1 @@
+"""Finance: annuities, cash flows, depreciation, securities."""
