@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from functools import cmp_to_key
+from itertools import pairwise
 
 from xleq.cells import BLANK, CALC, MISSING, VALUE, CellError, Missing, Value
 from xleq.recalc.coerce import compare, to_logical, to_number
@@ -120,10 +121,14 @@ def _ordered(keys: Sequence[tuple[Sequence[Value], int]], count: int) -> list[in
 
 def _ranks(values: Sequence[Value]) -> list[int]:
     """Place of each value among the different ones."""
-    ranked = sorted(range(len(values)), key=cmp_to_key(lambda i, j: _compared(values[i], values[j])))
+
+    def order(i: int, j: int) -> int:
+        return _compared(values[i], values[j])
+
+    ranked = sorted((i for i, v in enumerate(values) if v is not BLANK), key=cmp_to_key(order))
     ranks = [0] * len(values)
-    for before, i in zip(ranked, ranked[1:], strict=False):
-        ranks[i] = ranks[before] + (_compared(values[before], values[i]) != 0)
+    for before, i in pairwise(ranked):
+        ranks[i] = ranks[before] + (order(before, i) != 0)
     return ranks
 
 

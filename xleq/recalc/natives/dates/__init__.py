@@ -1,0 +1,1 @@
+"""Dates and times: their parts, counting days, working days."""
