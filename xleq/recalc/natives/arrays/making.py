@@ -2,14 +2,12 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
 from functools import cmp_to_key
 from itertools import pairwise
 
 from xleq.cells import BLANK, CALC, MISSING, VALUE, CellError, Missing, Value
 from xleq.recalc.coerce import compare, to_logical, to_number
-from xleq.recalc.context import Context
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Array, Fail, Operand, lookup_key
 
@@ -38,26 +36,6 @@ def sequence(rows: float = 1.0, columns: float = 1.0, start: float = 1.0, step: 
     """Numbers in equal steps, row by row."""
     height, width = size(rows, columns)
     return Array(height, width, [start + i * step for i in range(height * width)])
-
-
-@native("RANDARRAY", "number~ number~ number~ number~ logical~", context=True, volatile=True)
-def randarray(
-    context: Context,
-    rows: float = 1.0,
-    columns: float = 1.0,
-    low: float = 0.0,
-    high: float = 1.0,
-    whole: bool = False,
-) -> Array:
-    """Random numbers, whole ones if asked for."""
-    height, width = size(rows, columns)
-    if low > high or (whole and (low != int(low) or high != int(high))):
-        raise Fail(VALUE)
-    if whole:
-        made = [low + math.floor(context.random() * (high - low + 1)) for _ in range(height * width)]
-    else:
-        made = [low + context.random() * (high - low) for _ in range(height * width)]
-    return Array(height, width, made)
 
 
 def taken_rows(table: Array, rows: Sequence[int]) -> Array:
