@@ -20,8 +20,8 @@ def lines() -> list[dict[str, str]]:
 HEADS = [line for line in lines() if line["src_dHf"]]
 TABLE = standard_table()
 #: Pins of the data file, to be changed only together with it.
-N_SPECIES, N_LINES = 401, 621
-SUM_DHF, SUM_S, SUM_CP = 153688.222, 55671.026, 19946.236465890237
+N_SPECIES, N_LINES = 406, 626
+SUM_DHF, SUM_S, SUM_CP = 153765.063, 56017.219, 20156.047185549403
 
 
 def test_the_table_is_unchanged():
@@ -29,14 +29,16 @@ def test_the_table_is_unchanged():
     assert len(TABLE) == N_SPECIES
     assert math.fsum(abs(d.dhf) for d in TABLE.data.values()) == pytest.approx(SUM_DHF, rel=1e-12)
     assert math.fsum(d.s298 for d in TABLE.data.values()) == pytest.approx(SUM_S, rel=1e-12)
-    assert math.fsum(d.cp(298.15) for d in TABLE.data.values() if d.cp_known) == pytest.approx(SUM_CP, rel=1e-9)
+    assert math.fsum(d.cp(298.15) for d in TABLE.data.values() if d.cp_known) == pytest.approx(
+        SUM_CP, rel=1e-9
+    )
 
 
 def test_every_number_has_a_source_that_is_cited():
     cited = citations()
     for line in lines():
         if line["src_dHf"]:
-            assert line["src_dHf"] in cited and line["src_S"] in cited, line["species"]
+            assert {line["src_dHf"], line["src_S"]} <= set(cited), line["species"]
         if line["A"]:
             assert line["src_Cp"] in cited, line["species"]
         else:
@@ -59,9 +61,23 @@ def test_every_species_reads_as_a_formula_and_stands_once():
         assert TABLE.find(line["species"]).key == species.key
 
 
-@pytest.mark.parametrize("text", "H2 O2 N2 Cl2 F2 Ar C(s) S(s) Fe(s) Br2(l) Hg(l) I2(s) P(s)".split())
-def test_elements_in_their_reference_state_have_no_enthalpy_of_formation(text):
-    assert TABLE.find(text).dhf == 0.0
+def test_elements_in_their_reference_state_have_no_enthalpy_of_formation():
+    for text in (
+        "H2",
+        "O2",
+        "N2",
+        "Cl2",
+        "F2",
+        "Ar",
+        "C(s)",
+        "S(s)",
+        "Fe(s)",
+        "Br2(l)",
+        "Hg(l)",
+        "I2(s)",
+        "P(s)",
+    ):
+        assert TABLE.find(text).dhf == 0.0, text
 
 
 @pytest.mark.parametrize("data", TABLE.data.values(), ids=lambda d: d.key)
@@ -84,8 +100,12 @@ def test_h_and_s_are_the_integrals_of_cp(data):
         near_break = any(abs(t - i.t_min) < 1.0 for i in data.intervals[1:])
         if data.cp_known and not near_break:
             cp = data.cp(t)
-            assert (data.h(t + step) - data.h(t - step)) / (2 * step) * 1000 == pytest.approx(cp, rel=1e-5, abs=1e-4)
-            assert (data.s(t + step) - data.s(t - step)) / (2 * step) * t == pytest.approx(cp, rel=1e-5, abs=1e-4)
+            assert (data.h(t + step) - data.h(t - step)) / (2 * step) * 1000 == pytest.approx(
+                cp, rel=1e-5, abs=1e-4
+            )
+            assert (data.s(t + step) - data.s(t - step)) / (2 * step) * t == pytest.approx(
+                cp, rel=1e-5, abs=1e-4
+            )
             assert cp > 0 or data.key.endswith("(aq)")
         t += (data.t_max - data.t_min) / 7
 
@@ -102,6 +122,9 @@ def test_the_script_makes_the_table_again():
         for column, text in old.items():
             fresh = new.get(column, "")
             if column in "ABCDE" and text:
-                assert float(fresh) == pytest.approx(float(text), rel=1e-4, abs=1e-4), (old["species"], column)
+                assert float(fresh) == pytest.approx(float(text), rel=1e-4, abs=1e-4), (
+                    old["species"],
+                    column,
+                )
             else:
                 assert fresh == text, (old["species"], column)

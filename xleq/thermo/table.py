@@ -95,6 +95,7 @@ class Table:
             for k, d in self.data.items()
             if species.formula is not None and d.formula == species.formula and d.charge == species.charge
         ]
+        same = [k for k in same if k.endswith(key[key.rindex("(") :])] or same
         if same:
             return f"; of the same composition there is {_listed(same[:4])}"
         near = get_close_matches(key, [*self.data, *self.also], n=3, cutoff=0.6)
