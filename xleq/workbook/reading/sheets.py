@@ -111,12 +111,14 @@ class _Reader:
         self._formula_attributes = _NO_ATTRIBUTES
         self._inline: list[str] = []
         self._phonetic = 0
+        self._extension = 0
         self._pending_filter: Area | None = None
         self._starts: dict[str, Callable[[dict[str, str]], None]] = {
             "row": self._start_row,
             "c": self._start_cell,
             "f": self._start_formula,
             "rPh": self._start_phonetic,
+            "extLst": self._start_extension,
             "col": self._start_col,
             "autoFilter": self._start_filter,
             "filterColumn": self._start_filter_column,
@@ -132,7 +134,7 @@ class _Reader:
             raise LimitError("has too many elements inside one another (xml_depth)")
         self._text = ""
         handler = self._starts.get(bare(name))
-        if handler is not None:
+        if handler is not None and not self._extension:
             handler(attributes)
 
     def characters(self, text: str) -> None:
@@ -141,7 +143,9 @@ class _Reader:
     def end(self, name: str) -> None:
         self._depth_left += 1
         local = bare(name)
-        if local == "v":
+        if self._extension:  # whatever it holds is nothing of the cell's
+            self._extension -= local == "extLst"
+        elif local == "v":
             self._value = self._text
         elif local == "c":
             self._end_cell()
@@ -180,6 +184,9 @@ class _Reader:
 
     def _start_phonetic(self, _: dict[str, str]) -> None:
         self._phonetic += 1
+
+    def _start_extension(self, _: dict[str, str]) -> None:
+        self._extension = 1
 
     # Cells
 
