@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 from typing import TYPE_CHECKING
 
-from xleq.cells import BLANK, MAX_COLUMN, MAX_ROW, NA, CellError, Value, parse_address
+from xleq.cells import BLANK, MAX_COLUMN, MAX_ROW, CellError, Value, parse_address
 from xleq.recalc.columns import KEPT, Cells, Spot, Unsupported
 from xleq.recalc.operands import Area, Array, Operand, Ref
 from xleq.recalc.operators import stretched
@@ -82,11 +82,8 @@ class Spreader:
             return
         area = self.area(cell, formula)
         height, width = area.bottom - area.top + 1, area.right - area.left + 1
-        if isinstance(result, Array):
-            values = padded(result, height, width)
-        else:
-            values = [result] * (height * width)
-        self._put(cell, area, values, bits)
+        whole = result if isinstance(result, Array) else Array(1, 1, [result])
+        self._put(cell, area, padded(whole, height, width), bits)
 
     def _put(self, cell: Cell, area: Area, values: list[Value], bits: int) -> None:
         from xleq.recalc.evaluate import single_value
@@ -227,8 +224,8 @@ def padded(array: Array, height: int, width: int) -> list[Value]:
 
     Examples
     --------
-    >>> padded(Array.row([1.0, 2.0]), 2, 3)[:3] == [1.0, 2.0, NA]
-    True
+    >>> [str(v) for v in padded(Array.row([1.0, 2.0]), 2, 3)]
+    ['1.0', '2.0', '#N/A', '1.0', '2.0', '#N/A']
     """
     if array.height > height or array.width > width:
         rows = [row[:width] for row in array.rows()[:height]]

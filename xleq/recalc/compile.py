@@ -75,7 +75,7 @@ class Compiler:
 
     def formula(self, node: tree.Node, array: bool) -> Run:
         """A whole formula. A sum or difference at its top snaps to zero."""
-        if isinstance(node, tree.Infix) and node.operator in "+-" and not array:
+        if isinstance(node, tree.Infix) and node.operator in "+-":
             quick = total if node.operator == "+" else difference
             return quick(self.scalar(node.left, array, {}), self.scalar(node.right, array, {}))
         return self.scalar(node, array, {})

@@ -13,7 +13,7 @@ from xleq.cells import BLANK, CALC, REF, Blank, CellError, Value, address_text, 
 from xleq.errors import FormulaError, LimitError
 from xleq.recalc import tree
 from xleq.recalc.arrays import DataTables, Spreader
-from xleq.recalc.columns import CHANGED, KEPT, MARKED, VOLATILE, Blocked, Cells, Spot, Unsupported
+from xleq.recalc.columns import CHANGED, KEPT, MARKED, VOLATILE, Blocked, Spot, Unsupported
 from xleq.recalc.compile import Compiler
 from xleq.recalc.context import Context
 from xleq.recalc.indirect import reference_named
@@ -110,7 +110,7 @@ class Engine:
         self.spread = Spreader(self, areas)
         self.stores = [self.spread.cells(index) for index in range(len(book.sheets))]
         self.names = Names(book, self.stores)
-        self._compilers = [Compiler(i, self.stores, self.names, functions) for i in range(len(book.sheets))]
+        self.compilers = [Compiler(i, self.stores, self.names, functions) for i in range(len(book.sheets))]
         self._programs: dict[object, Program | str] = {}
         self._random = random.Random(settings.seed)
         self._deadline = time.monotonic() + settings.seconds
@@ -141,7 +141,7 @@ class Engine:
 
     def reference(self, at: Context, text: str, a1: bool) -> Ref:
         """The reference that a text names."""
-        return reference_named(at, text, a1, self._compilers[at.sheet])
+        return reference_named(at, text, a1, self.compilers[at.sheet])
 
     def formula_at(self, sheet: int, row: int, column: int) -> str | None:
         """Formula text of a cell, with its equals sign."""
@@ -190,7 +190,7 @@ class Engine:
                 self.compute(cell)
             except Blocked as blocked:
                 active[cell] = None
-                needs = [c for c in dict.fromkeys(blocked.cells)]
+                needs = list(dict.fromkeys(blocked.cells))
                 circular = next((c for c in needs if c in active), None)
                 if circular is not None:
                     order = list(active)
@@ -211,11 +211,7 @@ class Engine:
             raise LimitError(f"recalculation took longer than {self.settings.seconds:g} s")
         sheet, row, column = cell
         formula = self.book.sheets[sheet].formulas[(row, column)]
-        at = self.at
-        at.sheet, at.row, at.column = sheet, row, column
-        at.locals = ()
-        at.trust = 0
-        at.cause = None
+        at = self.place(cell, array=False)
         try:
             if formula.kind is FormulaKind.DATA_TABLE:
                 self.spread.fill(cell, formula, DataTables(self).values(cell, formula), at.trust)
@@ -233,6 +229,16 @@ class Engine:
             self.keep(cell, str(reason))
         except RecursionError:
             self.keep(cell, "the formula is nested too deeply")
+
+    def place(self, cell: Cell, array: bool) -> Context:
+        """The context, set to a cell."""
+        at = self.at
+        at.sheet, at.row, at.column = cell
+        at.array_mode = array
+        at.locals = ()
+        at.trust = 0
+        at.cause = None
+        return at
 
     def program(self, cell: Cell, formula: Formula) -> Program:
         """The compiled formula of a cell.
@@ -255,7 +261,7 @@ class Engine:
         if known is None:
             try:
                 node = parse(formula.text, *formula.origin)
-                known = Program(node, self._compilers[sheet].formula(node, array), array)
+                known = Program(node, self.compilers[sheet].formula(node, array), array)
             except (FormulaError, Unsupported) as reason:
                 known = str(reason)
             self._programs[key] = known
@@ -326,7 +332,7 @@ def single_value(result: Operand) -> Value:
     if kind is float:
         # one zero only, and nothing that is no number
         if result - result == 0.0:  # type: ignore[operator]
-            return result + 0.0  # type: ignore[operator, return-value]
+            return result + 0.0  # type: ignore[operator]
         return CellError("#NUM!", "the result is too large")
     if kind is str or kind is bool or kind is CellError:
         return result  # type: ignore[return-value]

@@ -61,12 +61,13 @@ def _r1c1(at: Context, text: str, sheet: int | None) -> Ref | None:
     if len(ends) > 2:
         return None
     corners = [_corner(at, end) for end in ends]
-    tops, lefts = [], []
+    tops: list[int] = []
+    lefts: list[int] = []
     for corner in corners:
         if corner is None:
             return None
         rows, columns = corner
-        if not (1 <= rows[0] and rows[1] <= MAX_ROW and 1 <= columns[0] and columns[1] <= MAX_COLUMN):
+        if rows[0] < 1 or rows[1] > MAX_ROW or columns[0] < 1 or columns[1] > MAX_COLUMN:
             return None
         tops += rows
         lefts += columns
