@@ -30,9 +30,9 @@ def wildcard_pattern(text: str) -> re.Pattern[str]:
     at = 0
     while at < len(text):
         c = text[at]
-        if c == "~" and at + 1 < len(text) and text[at + 1] in "*?~":
+        if c == "~":  # takes any character literally; at the end it stands for nothing
             at += 1
-            parts.append(re.escape(text[at]))
+            parts.append(re.escape(text[at : at + 1]))
         else:
             parts.append({"*": ".*", "?": "."}.get(c) or re.escape(c))
         at += 1

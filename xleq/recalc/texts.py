@@ -50,9 +50,9 @@ def number_text(x: float) -> str:
 
 _PLAIN = re.compile(r"[+-]?[0-9]{1,15}(?:\.[0-9]{0,14})?")
 _NUMBER = re.compile(
-    r"(?P<open>\()?\s*(?P<sign>[+-])?\s*(?P<money>\$)?\s*(?P<sign2>[+-])?\s*(?P<before>%)?\s*"
+    r"(?P<open>\()?\s*(?P<sign>[+-])?\s*(?P<money>[$€])?\s*(?P<sign2>[+-])?\s*(?P<before>%)?\s*"
     r"(?P<whole>[0-9]+(?:,[0-9]{3,})*|(?=\.[0-9]))(?P<point>\.[0-9]*)?(?:E(?P<power>[+-]?[0-9]+))?"
-    r"\s*(?P<after>%)?\s*(?P<close>\))?\s*(?P<after2>%)?",
+    r"\s*(?P<after>%)?\s*(?P<euro>€)?\s*(?P<close>\))?\s*(?P<after2>%)?",
     re.IGNORECASE,
 )
 _FRACTION = re.compile(r"(?P<sign>[+-])?\s*(?P<whole>[0-9]+) +(?P<top>[0-9]{1,5})/(?P<bottom>[0-9]{1,5})")
@@ -61,8 +61,8 @@ _FRACTION = re.compile(r"(?P<sign>[+-])?\s*(?P<whole>[0-9]+) +(?P<top>[0-9]{1,5}
 def parse_number(text: str, *, year: int | None = None, date_1904: bool = False) -> float | None:
     """Number that a text stands for where a number is wanted; None if it stands for none.
 
-    Signs, thousands separators, ``$``, ``%``, parentheses for negative numbers, exponents, fractions such as
-    ``1 1/2``, dates, times, and a date with a time. Digits after the fifteenth count as 0.
+    Signs, thousands separators, ``$``, ``€``, ``%``, parentheses for negative numbers, exponents, fractions
+    such as ``1 1/2``, dates, times, and a date with a time. Digits after the fifteenth count as 0.
 
     Parameters
     ----------
@@ -104,7 +104,7 @@ def _plain_number(text: str) -> float | None:
     percents = [p for p in (m["before"], m["after"], m["after2"]) if p]
     if len(signs) > 1 or len(percents) > 1 or bool(m["open"]) != bool(m["close"]) or (m["open"] and signs):
         return None
-    if m["after2"] and not m["close"]:
+    if (m["after2"] and not m["close"]) or (m["money"] and m["euro"]):
         return None
     value = _fifteen_digits((m["whole"] or "").replace(",", ""), (m["point"] or "")[1:], m["power"] or "0")
     if percents:

@@ -115,8 +115,9 @@ def type_(context: Context, argument: Argument) -> float:
     return next((number for kind, number in _TYPES if isinstance(value, kind)), 1.0)
 
 
-_ERROR_NUMBERS: Final = {
-    code: float(number)
+#: Number of each error, as ERROR.TYPE gives it.
+ERROR_NUMBERS: Final = {
+    code: number
     for number, code in enumerate(
         (
             "#NULL!", "#DIV/0!", "#VALUE!", "#REF!", "#NAME?", "#NUM!", "#N/A", "#GETTING_DATA",
@@ -130,9 +131,9 @@ _ERROR_NUMBERS: Final = {
 @native("ERROR.TYPE", "any")
 def error_type(value: Value) -> float:
     """Number of an error; #N/A for anything else."""
-    if not isinstance(value, CellError) or value.code not in _ERROR_NUMBERS:
+    if not isinstance(value, CellError) or value.code not in ERROR_NUMBERS:
         raise Fail(NA)
-    return _ERROR_NUMBERS[value.code]
+    return float(ERROR_NUMBERS[value.code])
 
 
 @native("NA")

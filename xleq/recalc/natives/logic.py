@@ -180,18 +180,15 @@ def _logicals(arguments: Sequence[Argument]) -> Iterable[bool]:
                     found = True
                     yield bool(v)
             continue
-        test = to_logical(term_of_list(argument))
-        if isinstance(test, CellError):
-            raise Fail(test)
-        found = True
-        yield test
+        value = BLANK if isinstance(argument, Missing) else argument
+        if isinstance(value, CellError):
+            raise Fail(value)
+        test = to_logical(value)  # type: ignore[arg-type]
+        if isinstance(test, bool):  # text that is no logical is passed over
+            found = True
+            yield test
     if not found:
         raise Fail(CellError("#VALUE!", "there is no logical value"))
-
-
-def term_of_list(argument: Argument) -> Value:
-    """A value given directly to a function of lists."""
-    return BLANK if isinstance(argument, Missing) else argument  # type: ignore[return-value]
 
 
 @native("AND", "list list*")

@@ -8,6 +8,7 @@ from itertools import pairwise
 
 from xleq.cells import BLANK, CALC, MISSING, VALUE, CellError, Missing, Value
 from xleq.recalc.coerce import compare, to_logical, to_number
+from xleq.recalc.natives.information import ERROR_NUMBERS
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Array, Fail, Operand, lookup_key
 
@@ -110,10 +111,14 @@ def _ranks(values: Sequence[Value]) -> list[int]:
     return ranks
 
 
+def _error_rank(value: Value) -> int:
+    """Order of errors among themselves, after every other value."""
+    return ERROR_NUMBERS.get(value.code, 99) if isinstance(value, CellError) else 0
+
+
 def _compared(a: Value, b: Value) -> int:
-    a_failed, b_failed = isinstance(a, CellError), isinstance(b, CellError)
-    if a_failed or b_failed:
-        return a_failed - b_failed
+    if isinstance(a, CellError) or isinstance(b, CellError):
+        return _error_rank(a) - _error_rank(b)
     return compare(a, b)
 
 

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from xleq.cells import NUM, CellError
+from xleq.cells import NUM, CellError, Missing, Value
+from xleq.recalc.coerce import to_number
 from xleq.recalc.context import Context
 from xleq.recalc.days import (
     SECONDS,
@@ -146,10 +147,10 @@ def weekday_(context: Context, serial: float, kind: float = 1.0) -> float:
     return float((number - start) % 7 + 1)
 
 
-@native("WEEKNUM", "number number~", context=True)
-def weeknum(context: Context, serial: float, kind: float = 1.0) -> float:
+@native("WEEKNUM", "value number~", context=True)
+def weeknum(context: Context, argument: Value | Missing, kind: float = 1.0) -> float:
     """Week of the year; the first one holds 1 January, or by ISO 8601 the first Thursday."""
-    old = context.date_1904
+    old, serial = context.date_1904, plain_number(argument)
     if int(kind) == 21:
         return isoweeknum(context, serial)
     start = _WEEK_STARTS.get(int(kind))
@@ -179,6 +180,18 @@ def isoweeknum(context: Context, serial: float) -> float:
     return float((thursday - _new_year(thursday, old)) // 7 + 1)
 
 
+def plain_number(value: Value | Missing) -> float:
+    """Number of an argument of the functions that take no logicals."""
+    if isinstance(value, Missing):
+        return 0.0
+    if isinstance(value, bool):
+        raise Fail(CellError("#VALUE!", "a logical is not a date or a number of days"))
+    number = to_number(value)
+    if isinstance(number, CellError):
+        raise Fail(number)
+    return number
+
+
 def _shifted(context: Context, serial: float, months: float) -> tuple[int, int, int]:
     """Year, month and day of a date with months added, the month perhaps outside 1 to 12."""
     y, m, d = day_parts(day_of(serial, context.date_1904), context.date_1904)
@@ -188,17 +201,17 @@ def _shifted(context: Context, serial: float, months: float) -> tuple[int, int, 
     return y + years, m + 1, d
 
 
-@native("EDATE", "number number", context=True)
-def edate(context: Context, serial: float, months: float) -> float:
+@native("EDATE", "value value", context=True)
+def edate(context: Context, serial: Value | Missing, months: Value | Missing) -> float:
     """The same day some months later, or the last day of that month."""
-    y, m, d = _shifted(context, serial, months)
+    y, m, d = _shifted(context, plain_number(serial), plain_number(months))
     return date_number(y, m, min(d, month_length(y, m)), context.date_1904)
 
 
-@native("EOMONTH", "number number", context=True)
-def eomonth(context: Context, serial: float, months: float) -> float:
+@native("EOMONTH", "value value", context=True)
+def eomonth(context: Context, serial: Value | Missing, months: Value | Missing) -> float:
     """Last day of the month some months later."""
-    y, m, _ = _shifted(context, serial, months)
+    y, m, _ = _shifted(context, plain_number(serial), plain_number(months))
     return date_number(y, m, month_length(y, m), context.date_1904)
 
 

@@ -7,12 +7,15 @@ from bisect import bisect_left
 from xleq.cells import BLANK, MISSING, NUM, VALUE, CellError, Missing, Value
 from xleq.recalc.coerce import to_number
 from xleq.recalc.context import Context
-from xleq.recalc.days import day_parts, is_day, is_leap, month_length, weekday
-from xleq.recalc.natives.dates.parts import date_number, day_of
+from xleq.recalc.days import SECONDS, day_parts, is_day, is_leap, month_length, weekday
+from xleq.recalc.natives.dates.parts import date_number, day_of, plain_number
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Array, Fail
 
 Parts = tuple[int, int, int]
+
+#: DAYS360 alone takes a time within it of midnight as the next day.
+_HALF_SECOND = 0.5 / SECONDS
 
 
 @native("DAYS", "number number", context=True)
@@ -37,7 +40,7 @@ def _ends_february(date: Parts) -> bool:
 @native("DAYS360", "number number logical~", context=True)
 def days360(context: Context, start: float, end: float, european: bool = False) -> float:
     """Days between dates in years of twelve months of 30 days."""
-    a, b = _both(context, start, end)
+    a, b = _both(context, start + _HALF_SECOND, end + _HALF_SECOND)
     first, last = min(a[2], 30), b[2]
     if european:
         last = min(last, 30)
@@ -86,11 +89,11 @@ def year_fraction(start: int, end: int, basis: int, date_1904: bool = False) -> 
     return _span_360(a, b, first, last) / 360.0
 
 
-@native("YEARFRAC", "number number number~", context=True)
-def yearfrac(context: Context, start: float, end: float, basis: float = 0.0) -> float:
+@native("YEARFRAC", "value value number~", context=True)
+def yearfrac(context: Context, start: Value | Missing, end: Value | Missing, basis: float = 0.0) -> float:
     """Years between two dates on a day-count basis."""
     old = context.date_1904
-    a, b = day_of(start, old), day_of(end, old)
+    a, b = day_of(plain_number(start), old), day_of(plain_number(end), old)
     if int(basis) not in (0, 1, 2, 3, 4):
         raise Fail(NUM)
     return year_fraction(a, b, int(basis), old)
@@ -207,43 +210,47 @@ def _rest_days(weekend: Value | Missing) -> tuple[int, ...]:
     return rest
 
 
-@native("NETWORKDAYS", "number number list?", context=True)
-def networkdays(context: Context, start: float, end: float, holidays: Argument = MISSING) -> float:
+@native("NETWORKDAYS", "value value list?", context=True)
+def networkdays(
+    context: Context, start: Value | Missing, end: Value | Missing, holidays: Argument = MISSING
+) -> float:
     """Working days from one date to another, both included, Saturday and Sunday free."""
     return networkdays_intl(context, start, end, MISSING, holidays)
 
 
-@native("NETWORKDAYS.INTL", "number number value? list?", context=True)
+@native("NETWORKDAYS.INTL", "value value value? list?", context=True)
 def networkdays_intl(
     context: Context,
-    start: float,
-    end: float,
+    start: Value | Missing,
+    end: Value | Missing,
     weekend: Value | Missing = MISSING,
     holidays: Argument = MISSING,
 ) -> float:
     """Working days from one date to another, both included."""
     old = context.date_1904
-    first, last = day_of(start, old), day_of(end, old)
+    first, last = day_of(plain_number(start), old), day_of(plain_number(end), old)
     return float(_Workdays(_rest_days(weekend), _holidays(holidays, old), old).between(first, last))
 
 
-@native("WORKDAY", "number number list?", context=True)
-def workday(context: Context, start: float, count: float, holidays: Argument = MISSING) -> float:
+@native("WORKDAY", "value value list?", context=True)
+def workday(
+    context: Context, start: Value | Missing, count: Value | Missing, holidays: Argument = MISSING
+) -> float:
     """The date some working days later, Saturday and Sunday free."""
     return workday_intl(context, start, count, MISSING, holidays)
 
 
-@native("WORKDAY.INTL", "number number value? list?", context=True)
+@native("WORKDAY.INTL", "value value value? list?", context=True)
 def workday_intl(
     context: Context,
-    start: float,
-    count: float,
+    start: Value | Missing,
+    count: Value | Missing,
     weekend: Value | Missing = MISSING,
     holidays: Argument = MISSING,
 ) -> float:
     """The date some working days later."""
     old = context.date_1904
-    first, n = day_of(start, old), int(count)
+    first, n = day_of(plain_number(start), old), int(plain_number(count))
     rest = _rest_days(weekend)
     if len(rest) == 7:
         raise Fail(VALUE)

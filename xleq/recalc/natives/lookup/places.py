@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import Final
 
 from xleq.cells import (
@@ -181,13 +182,36 @@ def transpose(table: Array) -> Array:
     return Array(w, table.height, [v for c in range(w) for v in flat[c::w]])
 
 
+_PREFIX = re.compile(r"_xl(?:fn|ws|pm|op|udf)\.")
+_SPILL = re.compile(r"ANCHORARRAY\(([^()]*)\)")
+_SINGLE = re.compile(r"SINGLE\(([^()]*)\)")
+
+
+def shown_formula(formula: str) -> str:
+    """Formula as the spreadsheet shows it, without the prefixes that files put before newer functions.
+
+    Examples
+    --------
+    >>> shown_formula('=_xlfn.CONCAT("_xlfn.",_xlfn.ANCHORARRAY(A1))')
+    '=CONCAT("_xlfn.",A1#)'
+    """
+    pieces = formula.split('"')
+    for i in range(0, len(pieces), 2):
+        if "_xl" in pieces[i]:
+            plain = _PREFIX.sub("", pieces[i])
+            pieces[i] = _SINGLE.sub(r"@\1", _SPILL.sub(r"\1#", plain))
+    return '"'.join(pieces)
+
+
 @native("FORMULATEXT", "range", context=True)
 def formulatext(context: Context, ref: Ref) -> Operand:
     """Formula of a cell as text."""
 
     def text(area: Area) -> Value:
         formula = context.formula_at(Ref((area,)))
-        return CellError("#N/A", "the cell holds no formula") if formula is None else formula
+        if formula is None:
+            return CellError("#N/A", "the cell holds no formula")
+        return shown_formula(formula)
 
     area = _only(ref)
     rows, columns = _rows(ref), _columns(ref)

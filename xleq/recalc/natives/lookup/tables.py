@@ -50,12 +50,18 @@ def _index(number: float, size: int) -> int:
     return int(number) - 1
 
 
+def _table(context: Context, argument: Argument) -> Block:
+    if isinstance(argument, str):
+        raise Fail(CellError("#VALUE!", "the table must be a range or an array"))
+    return Block(context, argument)
+
+
 @native("VLOOKUP", "value operand number logical?", context=True)
 def vlookup(
     context: Context, wanted: Value, table: Argument, column: float, approximate: bool = True
 ) -> Value:
     """Value in a column of the row whose first value is found."""
-    block = Block(context, table)
+    block = _table(context, table)
     index = _index(column, block.width)
     wanted, first = _sought(wanted), block.column(0)
     row = _approximate(first, wanted) if approximate else _found(finding.exact(first, wanted, True))
@@ -65,7 +71,7 @@ def vlookup(
 @native("HLOOKUP", "value operand number logical?", context=True)
 def hlookup(context: Context, wanted: Value, table: Argument, row: float, approximate: bool = True) -> Value:
     """Value in a row of the column whose first value is found."""
-    block = Block(context, table)
+    block = _table(context, table)
     index = _index(row, block.height)
     wanted, first = _sought(wanted), block.row(0)
     column = _approximate(first, wanted) if approximate else _found(finding.exact(first, wanted, True))
