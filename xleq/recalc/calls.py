@@ -23,6 +23,9 @@ if TYPE_CHECKING:
 _STEADY: Final = frozenset({"OFFSET", "INDIRECT", "CELL", "INFO", "SHEET", "SHEETS", "FORMULATEXT"})
 
 
+_EMPTY: Final[dict[str, Value]] = {"number": 0.0, "text": "", "logical": False}
+
+
 def _number(value: Operand) -> float:
     if type(value) is float:
         return value
@@ -77,7 +80,13 @@ def omitted(native: Native, index: int) -> Any:
     parameter = native.parameter(index)
     if parameter.empty_is_default:
         return _defaults(native)[index]
-    return {"number": 0.0, "text": "", "logical": False}.get(parameter.kind, MISSING)
+    if parameter.kind in _EMPTY:
+        return _EMPTY[parameter.kind]
+    if index < len(native.parameters) and not parameter.optional and parameter.kind in ("value", "any"):
+        return BLANK
+    if parameter.kind == "array" and not parameter.optional:
+        return Array(1, 1, [BLANK])
+    return MISSING
 
 
 def prepared(parameter: Parameter, run: Run) -> Callable[[Context], Any]:

@@ -26,7 +26,8 @@ an array: shapes are stretched as in the spreadsheet, and elements that have no 
 After the kind: ``?`` the parameter may be omitted (the definition's own default is used) and an argument
 left empty counts as blank; ``~`` omitted or empty, the default is used; ``*`` the last parameter repeats,
 zero times or more. A group of kinds in brackets repeats as a whole: ``(range any)*``.
-For the kinds value, any, array, list, operand and lazy an argument left empty arrives as `MISSING`.
+For the kinds list, operand and lazy, and for value, any and array where they are optional, an argument left
+empty arrives as `MISSING`; for value, any and array that are not, it arrives as a blank.
 
 A definition returns a float (never an int), str, bool, `BLANK`, a `CellError`, an `Array` or a `Ref`, or raises
 `Fail`. Where it computes with `number` alone, `OverflowError` and `ValueError` become #NUM!,
