@@ -114,7 +114,8 @@ def test_a_prefix_and_an_encoding_are_kept_or_become_utf8(make_book: BookMaker) 
 
 
 def test_values_that_did_not_change_keep_their_bytes(make_book: BookMaker) -> None:
-    row = '<row r="1"><c r="A1"><f>X</f><v>0.10000000000000001</v></c><c r="B1" t="s"><f>Y</f><v>0</v></c></row>'
+    number = '<c r="A1"><f>X</f><v>0.10000000000000001</v></c>'
+    row = f'<row r="1">{number}<c r="B1" t="s"><f>Y</f><v>0</v></c></row>'
     path = make_book(
         {"Loop": data(row)},
         links={"x": ("sharedStrings", "s.xml")},

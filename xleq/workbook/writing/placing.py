@@ -151,24 +151,26 @@ def _back_up(path: Path) -> Path:
     while True:
         tail = "" if number == 1 else f"-{number}"
         backup = path.with_name(f"{path.stem}.backup{tail}{path.suffix}")
-        if backup.exists() and os.path.samefile(backup, path):
+        if not backup.exists():
+            with suppress(FileExistsError):  # somebody was faster: the next number
+                return _second_name(path, backup)
+        elif os.path.samefile(backup, path):
             return backup
-        try:
-            os.link(path, backup)
-        except FileExistsError:
-            number += 1
-        except (OSError, NotImplementedError):
-            return _copy(path, backup)  # a file system without second names
-        else:
-            return backup
+        number += 1
 
 
-def _copy(path: Path, backup: Path) -> Path:
-    with path.open("rb") as old, backup.open("xb") as new:
-        shutil.copyfileobj(old, new)
-        new.flush()
-        os.fsync(new.fileno())
-    shutil.copystat(path, backup)
+def _second_name(path: Path, backup: Path) -> Path:
+    try:
+        os.link(path, backup)
+    except FileExistsError:
+        raise
+    except (OSError, NotImplementedError):  # a file system without second names: a copy, whole or not at all
+        with path.open("rb") as old, _temporary(path) as (new, temporary):
+            shutil.copyfileobj(old, new)
+            new.flush()
+            os.fsync(new.fileno())
+            shutil.copystat(path, temporary)
+            _rename(temporary, backup, new)
     return backup
 
 
