@@ -71,6 +71,52 @@ def received(
     return paid / (1.0 - rate * _years(context, settlement, maturity, basis))
 
 
+def _at_maturity(
+    context: Context, settlement: float, maturity: float, issue: float, basis: float
+) -> tuple[float, float, float]:
+    """Years from issue to maturity, from issue to settlement, and from settlement to maturity.
+
+    All in years of the length that the first year has.
+    """
+    calendar = Calendar(checked_basis(basis), context.date_1904)
+    bought, end, begin = (checked_day(d, context.date_1904) for d in (settlement, maturity, issue))
+    if not begin < bought < end:
+        raise ValueError
+    year = calendar.year_length(begin, bought)
+    return (
+        calendar.days(begin, end) / year,
+        calendar.days(begin, bought) / year,
+        calendar.days(bought, end) / year,
+    )
+
+
+@native("PRICEMAT", "number number number number number number?", context=True)
+@guarded
+def pricemat(
+    context: Context, settlement: float, maturity: float, issue: float, rate: float, yield_: float,
+    basis: float = 0.0,
+) -> float:  # fmt: skip
+    """Price of a security that pays interest at maturity."""
+    if rate < 0.0 or yield_ < 0.0:
+        raise ValueError
+    whole, gone, left = _at_maturity(context, settlement, maturity, issue, basis)
+    return 100.0 * ((1.0 + whole * rate) / (1.0 + left * yield_) - gone * rate)
+
+
+@native("YIELDMAT", "number number number number number number?", context=True)
+@guarded
+def yieldmat(
+    context: Context, settlement: float, maturity: float, issue: float, rate: float, paid: float,
+    basis: float = 0.0,
+) -> float:  # fmt: skip
+    """Yield of a security that pays interest at maturity."""
+    if rate < 0.0 or paid <= 0.0:
+        raise ValueError
+    whole, gone, left = _at_maturity(context, settlement, maturity, issue, basis)
+    owed = paid / 100.0 + gone * rate
+    return (1.0 + whole * rate - owed) / owed / left
+
+
 @native("ACCRINTM", "number number number number~ number?", context=True)
 @guarded
 def accrintm(
