@@ -20,7 +20,7 @@ from pathlib import Path
 from xleq.cells import BLANK, CellAddress
 from xleq.errors import XleqError
 from xleq.recalc import recalculate
-from xleq.recalc.evaluate import agree
+from xleq.recalc.evaluate import agree, tolerance_of
 from xleq.workbook import Book, FormulaKind, open_book
 
 CORPUS = Path(__file__).resolve().parents[3] / "shared" / "corpus"
@@ -68,6 +68,7 @@ def examine(book: Book) -> Tally:
     done = recalculate(book, {}, now=datetime(2026, 12, 1), trust_fresh=False)
     kept = {k.address: k.reason for k in done.kept}
     disagreed = {d.address: d.fresh for d in done.disagreements}
+    followed = set(done.followed)
     changed = {c.address: c.fresh for c in done.changed}
     tally = Tally()
     for sheet in book.sheets:
@@ -82,7 +83,9 @@ def examine(book: Book) -> Tally:
                 outcome = "no stored value"
             elif address in disagreed:
                 outcome = "disagrees"
-            elif address in changed and not agree(changed[address], stored):
+            elif address in followed:
+                outcome = "equal"
+            elif address in changed and not agree(changed[address], stored, tolerance_of(text)):
                 outcome = "silently different"
             else:
                 outcome = "equal"
@@ -120,7 +123,9 @@ def main(arguments: list[str]) -> int:
                 continue
             except Exception as bug:  # a traceback is what this counts
                 where = traceback.extract_tb(bug.__traceback__)[-1]
-                print(f"{path.name}: TRACEBACK {type(bug).__name__}: {bug} in {where.filename}:{where.lineno}")
+                print(
+                    f"{path.name}: TRACEBACK {type(bug).__name__}: {bug} in {where.filename}:{where.lineno}"
+                )
                 total.reasons["TRACEBACK"] += 1
                 continue
             took = time.perf_counter() - start

@@ -7,7 +7,7 @@ from collections.abc import Callable, Sequence
 from functools import lru_cache, partial
 from typing import TYPE_CHECKING, Any, Final
 
-from xleq.cells import BLANK, DIV0, MISSING, NA, NUM, VALUE, CellError, Missing, Value
+from xleq.cells import BLANK, DIV0, MISSING, NA, NUM, VALUE, Blank, CellError, Missing, Value
 from xleq.recalc.coerce import to_logical, to_number, to_text
 from xleq.recalc.columns import VOLATILE
 from xleq.recalc.context import Context
@@ -21,6 +21,25 @@ if TYPE_CHECKING:
 
 #: Volatile in the spreadsheet, but with the same arguments they give the same result.
 _STEADY: Final = frozenset({"OFFSET", "INDIRECT", "CELL", "INFO", "SHEET", "SHEETS", "FORMULATEXT"})
+
+
+_PLAIN: Final = frozenset({float, str, bool, CellError, Blank, Array, Ref, Computed})
+
+
+def plain(result: Any) -> Operand:
+    """A result with numpy's numbers and whole numbers as floats.
+
+    Examples
+    --------
+    >>> plain(3)
+    3.0
+    """
+    if type(result) in _PLAIN or isinstance(result, Array):
+        return result  # type: ignore[no-any-return]
+    if isinstance(result, int | float):
+        return float(result)
+    kind = getattr(result, "dtype", None)
+    return result.item() if kind is not None else result  # type: ignore[no-any-return]
 
 
 _EMPTY: Final[dict[str, Value]] = {"number": 0.0, "text": "", "logical": False}
@@ -151,7 +170,8 @@ def native_call(native: Native, arguments: Sequence[Callable[[Context], Any] | M
                     if is_scalar and isinstance(value, Array):
                         return _mapped(at, native, call, values, converters, scalar)
                 values = [convert(value) for convert, value in zip(converters, values, strict=True)]
-            return call(at, *values) if with_context else call(*values)  # type: ignore[no-any-return]
+            result = call(at, *values) if with_context else call(*values)
+            return result if type(result) in _PLAIN else plain(result)
         except Fail as fail:
             return fail.error
 
@@ -184,12 +204,12 @@ def _of_one_number(native: Native, argument: Run) -> Run:
         try:
             if type(value) is float:
                 result = call(value)
-                if type(result) is float and result - result != 0.0:
-                    return NUM
-                return result  # type: ignore[no-any-return]
+                if type(result) is float:
+                    return result if result - result == 0.0 else NUM
+                return plain(result)
             if isinstance(value, Array):
                 return _mapped(at, native, guarded, [value], [_number], [True])
-            return guarded(_number(value))  # type: ignore[no-any-return]
+            return plain(guarded(_number(value)))
         except Fail as fail:
             return fail.error
         except (OverflowError, ValueError):
@@ -228,7 +248,7 @@ def _mapped(
             continue
         try:
             given = [convert(v) for convert, v in zip(converters, args, strict=True)]
-            results.append(contents(at, call(at, *given) if native.context else call(*given)))
+            results.append(contents(at, plain(call(at, *given) if native.context else call(*given))))
         except Fail as fail:
             results.append(fail.error)
     return gathered(results, height, width)
@@ -322,7 +342,7 @@ def own_call(function: Callable[[list[Any]], Any], arguments: Sequence[Run | Mis
         if isinstance(result, list):
             if not result or not result[0]:
                 return BLANK
-            return Array.of_rows(result)
-        return result  # type: ignore[no-any-return]
+            return Array.of_rows([[plain(v) for v in row] for row in result])  # type: ignore[misc]
+        return plain(result)
 
     return run

@@ -41,7 +41,8 @@ def recheck(engine: Engine) -> list[Disagreement]:
 def _check(engine: Engine, cell: Cell, formula: Formula) -> list[Disagreement]:
     at = engine.place(cell, array=formula.kind is FormulaKind.ARRAY)
     try:
-        result = engine.program(cell, formula).run(at)
+        program = engine.program(cell, formula)
+        result = program.run(at)
     except (Unsupported, Blocked, RecursionError):
         return []
     if at.trust & VOLATILE:
@@ -58,5 +59,5 @@ def _check(engine: Engine, cell: Cell, formula: Formula) -> list[Disagreement]:
     return [
         Disagreement((sheet, *spot), stored.get(spot, BLANK), value)
         for spot, value in fresh.items()
-        if not agree(value, stored.get(spot, BLANK))
+        if not agree(value, stored.get(spot, BLANK), program.tolerance)
     ]

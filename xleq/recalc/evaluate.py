@@ -26,12 +26,19 @@ from xleq.workbook import Book, Formula, FormulaKind
 Cell = tuple[int, int, int]
 
 
+#: Relative difference that a fresh number may have from the stored one. [-]
+TOLERANCE = 1e-9
+#: The same where Excel's own approximation is poor: its Bessel functions are good to five digits at worst.
+_POOR_TOLERANCE = 3e-5
+
+
 class Program(NamedTuple):
     """A formula compiled: its tree, and a closure that serves every cell it was filled to."""
 
     node: tree.Node
     run: Run
     array: bool
+    tolerance: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -224,7 +231,7 @@ class Engine:
             elif program.array:
                 self.spread.fill(cell, formula, result, at.trust)
             else:
-                self.finish(cell, single_value(result), at.trust)
+                self.finish(cell, single_value(result), at.trust, program.tolerance)
         except Unsupported as reason:
             self.keep(cell, str(reason))
         except RecursionError:
@@ -261,7 +268,8 @@ class Engine:
         if known is None:
             try:
                 node = parse(formula.text, *formula.origin)
-                known = Program(node, self.compilers[sheet].formula(node, array), array)
+                run = self.compilers[sheet].formula(node, array)
+                known = Program(node, run, array, tolerance_of(formula.text))
             except (FormulaError, Unsupported) as reason:
                 known = str(reason)
             self._programs[key] = known
@@ -269,7 +277,7 @@ class Engine:
             raise Unsupported(known)
         return known
 
-    def finish(self, cell: Cell, value: Value, bits: int) -> None:
+    def finish(self, cell: Cell, value: Value, bits: int, tolerance: float = TOLERANCE) -> None:
         """Make a cell final with its fresh value, or with its stored one where they disagree."""
         sheet, row, column = cell
         spot = (row, column)
@@ -289,7 +297,7 @@ class Engine:
             if bits & CHANGED and not bits & VOLATILE:
                 self.unchecked.append(cell)
             store.put(spot, value, marked if is_same else marked | CHANGED)
-        elif is_same or agree(value, stored):
+        elif is_same or agree(value, stored, tolerance):
             if type(value) is not CellError:
                 value = stored
             self.results[sheet][spot] = value
@@ -348,11 +356,12 @@ def identical(a: Value, b: Value) -> bool:
     return type(a) is type(b) and a == b
 
 
-#: Relative difference that a fresh number may have from the stored one. [-]
-TOLERANCE = 1e-9
+def tolerance_of(text: str) -> float:
+    """Relative difference [-] that a formula's fresh number may have from the stored one."""
+    return _POOR_TOLERANCE if "BESSEL" in text.upper() else TOLERANCE
 
 
-def agree(a: Value, b: Value) -> bool:
+def agree(a: Value, b: Value, tolerance: float = TOLERANCE) -> bool:
     """Whether a fresh value reproduces a stored one.
 
     Examples
@@ -363,5 +372,5 @@ def agree(a: Value, b: Value) -> bool:
     if type(a) is not type(b):
         return False
     if type(a) is float and type(b) is float:
-        return abs(a - b) <= TOLERANCE * max(abs(a), abs(b))
+        return abs(a - b) <= tolerance * max(abs(a), abs(b))
     return a == b

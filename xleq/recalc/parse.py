@@ -46,7 +46,9 @@ _TOKEN = re.compile(
     re.VERBOSE | re.IGNORECASE,
 )
 _CELL = re.compile(r"(\$?)([A-Za-z]{1,3})(\$?)([0-9]+)")
-_PREFIXES = re.compile(r"(?:_xlfn\.|_xlws\.|_xludf\.|_xll\.|_xldudf_|_xleta\.|_xlpm\.)+", re.IGNORECASE)
+_PREFIXES = re.compile(
+    r"(?:_xlfn\.|_xlws\.|_xludf\.|_xll\.|_xldudf_|_xleta\.|_xlpm\.|_xlop\.)+", re.IGNORECASE
+)
 _BINDING: Final = {
     "=": 10, "<>": 10, "<": 10, ">": 10, "<=": 10, ">=": 10,
     "&": 20, "+": 30, "-": 30, "*": 40, "/": 40, "^": 50,

@@ -91,6 +91,8 @@ class Recalculation:
         Unless their inputs changed, they keep the stored value.
     marked : list of Marked
         Formulas that depend on those.
+    followed : list of CellAddress
+        Formulas whose inputs changed; their own stored values were checked on the stored inputs.
     results : dict
         What `xleq.workbook.write_book` takes.
     n_formulas : int
@@ -104,6 +106,7 @@ class Recalculation:
     kept: list[Kept] = field(default_factory=list)
     disagreements: list[Change] = field(default_factory=list)
     marked: list[Marked] = field(default_factory=list)
+    followed: list[CellAddress] = field(default_factory=list)
     results: Results = field(default_factory=dict)
     n_formulas: int = 0
     seconds: float = 0.0
@@ -216,6 +219,7 @@ def _gathered(engine: Engine) -> Recalculation:
         value = book.sheets[cell[0]].stored.get(cell[1:], BLANK)
         found.kept.append(Kept(_address(book, cell), value, reason))
     found.disagreements = [_change(book, d.cell, d.stored, d.fresh) for d in engine.disagreements]
+    found.followed = [_address(book, cell) for cell in engine.unchecked]
     found.marked = [Marked(_address(book, c), _address(book, b)) for c, b in engine.marked.items()]
     return found
 

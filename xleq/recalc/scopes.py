@@ -68,6 +68,7 @@ def _lambda(compiler: Compiler, node: tree.Call, array: bool, scope: Scope) -> R
             name, n_optional = parameter.first, n_optional + 1
         elif isinstance(parameter, tree.Name) and parameter.place is None:
             name = parameter.name
+            n_optional += name.lower().startswith("_xlop.")
         else:
             return constant(_BAD_NAMES)
         inner[bare_name(name).lower()] = base + place
@@ -257,12 +258,28 @@ def _make_array(at: Context, function: Operand, rows: Array, columns: Array) -> 
     )
 
 
+def _single(compiler: Compiler, node: tree.Call, array: bool, scope: Scope) -> Run:
+    """SINGLE(reference): the function that files have for ``@``."""
+    if len(node.arguments) != 1:
+        return _wrong_number(node)
+    return compiler.prefix(tree.Prefix("@", node.arguments[0]), array, scope)
+
+
+def _anchor_array(compiler: Compiler, node: tree.Call, array: bool, scope: Scope) -> Run:
+    """ANCHORARRAY(cell): the function that files have for ``#``."""
+    if len(node.arguments) != 1:
+        return _wrong_number(node)
+    return compiler.postfix(tree.Postfix("#", node.arguments[0]), array, scope)
+
+
 #: Functions that are compiled in a way of their own.
 SPECIAL: Final[dict[str, Special]] = {
     "LET": _let,
     "LAMBDA": _lambda,
     "ISOMITTED": _is_omitted,
     "IF": _if,
+    "SINGLE": _single,
+    "ANCHORARRAY": _anchor_array,
     "MAP": _helper(2, 254, _map),
     "REDUCE": _helper(2, 3, _reduce),
     "SCAN": _helper(2, 3, _scan),
