@@ -142,6 +142,8 @@ class Package:
         steps = name.replace("\\", "/").split("/")
         if not name or ".." in steps or steps[0] == "" or steps[0].endswith(":") or "\0" in name:
             raise DamagedBookError(f"has a member outside the archive: {name!r}")
+        if not 0 <= entry.header_offset <= self.zip.start_dir:
+            raise DamagedBookError(f"says that {name!r} lies where no member can")
         if entry.flag_bits & _ENCRYPTED_FLAG:
             raise EncryptedBookError(f"has an encrypted member, {name!r}")
         if entry.compress_type not in (zipfile.ZIP_STORED, zipfile.ZIP_DEFLATED):

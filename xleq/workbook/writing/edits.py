@@ -4,11 +4,15 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from enum import Enum
+from typing import Final
 
 from xleq.cells import BLANK, Value, address_text, quote_sheet
 from xleq.errors import InputError
 from xleq.workbook.records import Area, FormulaKind, Place, Sheet, SheetResults
 from xleq.workbook.writing.values import same_value
+
+#: Cells of an area from which on it is not worth listing them.
+_VAST: Final = 10_000
 
 
 class Role(Enum):
@@ -75,8 +79,8 @@ def _add_children(edits: dict[Place, Edit], sheet: Sheet, results: SheetResults)
             raise InputError(f"{_where(sheet, place)} cannot fill an area that begins elsewhere")
         if area != old[place]:
             edits.setdefault(place, Edit(None, Role.FORMULA)).area = area
-    filled_before = _cells_of(old)
-    filled_now = _cells_of(old | results.areas)
+    filled_before = _Cover(old)
+    filled_now = _Cover(old | results.areas)
     for place, value in results.values.items():
         if place in sheet.formulas:
             continue
@@ -87,13 +91,22 @@ def _add_children(edits: dict[Place, Edit], sheet: Sheet, results: SheetResults)
             raise InputError(f"{_where(sheet, place)} is a constant that an array formula would overwrite")
         if not same_value(stored, value):
             edits[place] = Edit(value, Role.CHILD)
-    for place in filled_before - filled_now:
-        if place in sheet.stored and place not in sheet.formulas:
-            edits[place] = Edit(BLANK, Role.CHILD)
+    if results.areas:
+        for place in sheet.stored:
+            if place in filled_before and place not in filled_now and place not in sheet.formulas:
+                edits[place] = Edit(BLANK, Role.CHILD)
 
 
-def _cells_of(areas: dict[Place, Area]) -> set[Place]:
-    return {place for area in areas.values() for place in area.places()}
+class _Cover:
+    """The cells that some areas hold; vast areas are asked, not listed."""
+
+    def __init__(self, areas: dict[Place, Area]) -> None:
+        small = [area for area in areas.values() if area.n_cells <= _VAST]
+        self.vast = [area for area in areas.values() if area.n_cells > _VAST]
+        self.cells = {place for area in small for place in area.places()}
+
+    def __contains__(self, place: Place) -> bool:
+        return place in self.cells or any(area.holds(*place) for area in self.vast)
 
 
 def _where(sheet: Sheet, place: Place) -> str:
