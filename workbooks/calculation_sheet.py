@@ -23,8 +23,10 @@ RULE = "9FB4B9"
 
 CAUTIONS = (
     "Equilibrium is a limit: it says nothing about how fast, and it is not a design.",
-    "Invented figures for illustration. Before use in pressurised, toxic or flammable service, a qualified "
-    "person must check the calculation; local codes and licensed practice decide.",
+    (
+        "Invented figures for illustration. Before use in pressurised, toxic or flammable service, "
+        "a qualified person must check the calculation; local codes and licensed practice decide."
+    ),
 )
 
 _LINE = Side(style="thin", color=RULE)
@@ -39,7 +41,7 @@ def new_sheet(book: Workbook, name: str, widths: list[float]) -> Worksheet:
     sheet.page_setup.orientation = "landscape"
     sheet.page_setup.paperSize = 9
     sheet.page_setup.fitToWidth = 1
-    sheet.page_setup.fitToHeight = 0
+    sheet.page_setup.fitToHeight = 1
     sheet.sheet_properties.pageSetUpPr.fitToPage = True
     sheet.oddFooter.left.text = "&F  &A"
     sheet.oddFooter.right.text = "page &P of &N"
@@ -132,6 +134,8 @@ def _fill(sheet: Worksheet, address: str, value: object, number_format: str, col
     cell.number_format = number_format
     cell.font = Font(name="Calibri", size=10, color=INK)
     cell.border = Border(left=_LINE, right=_LINE, top=_LINE, bottom=_LINE)
+    if isinstance(value, str) and not value.startswith("="):
+        cell.alignment = Alignment(horizontal="center")
     if colour:
         cell.fill = PatternFill("solid", fgColor=colour)
 
@@ -150,6 +154,7 @@ def save(book: Workbook, path: Path) -> None:
     del book["Sheet"]
     book.properties.creator = "Hallow Fen Works"
     book.properties.title = path.stem.replace("_", " ")
-    book.calculation.fullCalcOnLoad = False
     book.save(path)
-    recalculate_file(path, path, backup=False)
+    report = recalculate_file(path, in_place=True, backup=False)
+    assert report.complete, report.found.kept or report.found.disagreements
+    assert not report.errors(), report.errors()

@@ -11,16 +11,16 @@ import calculation_sheet as cs
 from openpyxl import Workbook
 from openpyxl.chart import Reference, ScatterChart, Series
 from openpyxl.chart.shapes import GraphicalProperties
+from openpyxl.drawing.line import LineProperties
 from openpyxl.formatting.rule import ColorScaleRule, FormulaRule
 from openpyxl.styles import Font, PatternFill
 from openpyxl.workbook.defined_name import DefinedName
 from openpyxl.worksheet.datavalidation import DataValidation
-from openpyxl.worksheet.formula import ArrayFormula
 from openpyxl.worksheet.worksheet import Worksheet
 
 NUMBER = "HFW-C-2117"
 FEED = (("N2", 5_820.0), ("H2", 17_300.0), ("NH3", 840.0), ("CH4", 1_950.0), ("Ar", 610.0))
-# Larson and Dodge, J. Am. Chem. Soc. 45 (1923) 2918: mol % NH3 from 3 H2 : 1 N2 (from memory, page not checked).
+# mol % NH3 from 3 H2 : 1 N2: Larson and Dodge, J. Am. Chem. Soc. 45 (1923) 2918 (from memory).
 MEASURED = (
     (350, 10, 7.35),
     (400, 10, 3.85),
@@ -31,16 +31,24 @@ MEASURED = (
 )
 
 
+def log10_kp_half(kelvin: str) -> str:
+    """Formula text of log10 Kp [atm^-1] of 1/2 N2 + 3/2 H2 = NH3 at a temperature in K.
+
+    Gillespie and Beattie, Phys. Rev. 36 (1930) 743; the coefficients are from memory.
+    """
+    t = kelvin
+    return f"-2.691122*LOG10({t})-0.00005519265*{t}+0.0000001848863*{t}^2+2001.6/{t}+2.6899"
+
+
 def loop(book: Workbook) -> None:
     """Inputs, K on three bases, composition at the outlet, and what follows from it."""
-    s = cs.new_sheet(book, "Loop", [40, 16, 12, 16, 16, 16, 44])
+    s = cs.new_sheet(book, "Loop", [42, 26, 16, 20, 20, 18, 30])
     row = cs.title_block(s, "Ammonia converter: equilibrium at the outlet", NUMBER, "B", 7)
 
     row = cs.heading(s, row, "1  Basis and assumptions", 7)
     for text in (
         "One reaction, N2 + 3 H2 = 2 NH3; methane and argon pass through.",
-        "Ideal gas: above some tens of bar the real equilibrium holds more ammonia than shown here "
-        "(see the sheet Checks).",
+        "Ideal gas: above some tens of bar the real equilibrium holds more ammonia (sheet Checks).",
         "Pressures are gauge where the unit says so; xleq adds one standard atmosphere.",
     ):
         cs.label(s, row, text)
@@ -76,15 +84,13 @@ def loop(book: Workbook) -> None:
     cs.label(s, 21, "Temperature, K")
     cs.step(s, "B21", '=CONVERT(B15,IF(C15="degC","C",IF(C15="degF","F","K")),"K")', "0.00")
     cs.label(s, 22, "log10 Kp of the half reaction, atm^-1")
-    cs.step(
-        s, "B22", "=-2.691122*LOG10(B21)-0.00005519265*B21+0.0000001848863*B21^2+2001.6/B21+2.6899", "0.0000"
-    )
+    cs.step(s, "B22", f"={log10_kp_half('B21')}", "0.0000")
     cs.note(s, 22, 4, "Gillespie and Beattie, Phys. Rev. 36 (1930) 743; coefficients from memory")
     cs.label(s, 23, "Kp of the half reaction, atm^-1")
     cs.step(s, "B23", "=10^B22", "0.000E+00")
     cs.label(s, 24, "Kp of the reaction of this sheet, atm^-2")
     cs.step(s, "B24", "=XLEQ_K_SCALE(B23,2)", "0.000E+00")
-    cs.note(s, 24, 4, "the half reaction's K squared; used unsquared it is a classic mistake")
+    cs.note(s, 24, 4, "the half reaction's K squared; left unsquared it is a classic mistake")
     cs.label(s, 25, "K on p° = 1 bar")
     cs.result(s, "B25", '=XLEQ_K_CONVERT(B24,B20,"Kp[atm]","K")', "0.000E+00")
     cs.label(s, 26, "Kc, (mol/L)^-2")
@@ -95,7 +101,10 @@ def loop(book: Workbook) -> None:
     row = cs.heading(s, 29, "4  Composition", 7)
     row = cs.column_heads(
         s, row,
-        ["Species", "Feed, kmol/h", "Feed, mol %", "Equilibrium, kmol/h", "Equilibrium, mol %", "Change, kmol/h"],
+        [
+            "Species", "Feed, kmol/h", "Feed, mol %",
+            "Equilibrium, kmol/h", "Equilibrium, mol %", "Change, kmol/h",
+        ],
     )  # fmt: skip
     assert row == 31
     last = row + len(FEED) - 1
@@ -105,12 +114,9 @@ def loop(book: Workbook) -> None:
         cs.label(s, at, name)
         cs.entry(s, f"B{at}", feed, "#,##0")
         cs.step(s, f"C{at}", f"=B{at}/SUM(B$31:B${last})", "0.00%")
+        cs.result(s, f"D{at}", f'{call},"moles "&$A{at})', "#,##0.0")
         cs.result(s, f"E{at}", f'{call},"fractions "&$A{at})', "0.00%")
         cs.step(s, f"F{at}", f"=D{at}-B{at}", "#,##0.0")
-    # One array formula for the column of amounts, one cell a species for the fractions: sheets have both.
-    for at in range(row, last + 1):
-        cs.result(s, f"D{at}", None, "#,##0.0")
-    s[f"D{row}"] = ArrayFormula(f"D{row}:D{last}", f'{call},"moles")')
     cs.label(s, last + 1, "Total")
     for column, shape in (("B", "#,##0"), ("C", "0.00%"), ("D", "#,##0.0"), ("E", "0.00%"), ("F", "#,##0.0")):
         cs.step(s, f"{column}{last + 1}", f"=SUM({column}{row}:{column}{last})", shape)
@@ -132,7 +138,7 @@ def loop(book: Workbook) -> None:
     cs.step(s, "B44", f'{call},"state")')
 
     row = cs.heading(s, 46, "6  Checks", 7)
-    checks = (
+    balances = (
         (
             "Nitrogen atoms in minus out, kmol/h",
             "=2*(D31-B31)+(D33-B33)",
@@ -153,7 +159,7 @@ def loop(book: Workbook) -> None:
             '=IF(ABS(B50-1)<0.000001,"ok","look")',
         ),
     )
-    for at, (text, formula, shape, verdict) in enumerate(checks, row):
+    for at, (text, formula, shape, verdict) in enumerate(balances, row):
         cs.label(s, at, text)
         cs.step(s, f"B{at}", formula, shape)
         cs.step(s, f"C{at}", verdict)
@@ -174,7 +180,7 @@ def temperature_pressure_map(book: Workbook) -> None:
     cs.label(
         s,
         8,
-        "Mole fraction of ammonia at equilibrium, feed of the sheet Loop, ideal gas. Pressure across in bar absolute.",
+        "Mole fraction of ammonia at equilibrium, feed of the sheet Loop, ideal gas; pressures are absolute.",
     )
     cs.column_heads(s, 10, ["Temperature, degC", "K (1 bar)"])
     pressures = (50, 100, 150, 200, 250, 300)
@@ -185,10 +191,10 @@ def temperature_pressure_map(book: Workbook) -> None:
         cell.fill = PatternFill("solid", fgColor=cs.PALE)
     for row, celsius in enumerate(range(340, 541, 20), 11):
         cs.entry(s, f"A{row}", float(celsius), "0")
+        kelvin = f"($A{row}+273.15)"
         cs.step(
             s, f"B{row}",
-            f"=XLEQ_K_CONVERT((10^(-2.691122*LOG10($A{row}+273.15)-0.00005519265*($A{row}+273.15)"
-            f'+0.0000001848863*($A{row}+273.15)^2+2001.6/($A{row}+273.15)+2.6899))^2,Reaction,"Kp[atm]","K")',
+            f"=XLEQ_K_CONVERT((10^({log10_kp_half(kelvin)}))^2,Reaction,\"Kp[atm]\",\"K\")",
             "0.00E+00",
         )  # fmt: skip
         for column in range(3, 3 + len(pressures)):
@@ -217,7 +223,8 @@ def _map_chart(s: Worksheet) -> ScatterChart:
     chart.x_axis.majorUnit = 20
     chart.x_axis.number_format, chart.y_axis.number_format = "0", "0%"
     chart.x_axis.delete = chart.y_axis.delete = False
-    chart.y_axis.majorGridlines.spPr = GraphicalProperties(ln=None)
+    chart.y_axis.majorGridlines.spPr = GraphicalProperties(ln=LineProperties(solidFill="D3DDDF"))
+    chart.x_axis.majorGridlines = None
     chart.width, chart.height = 24, 12
     chart.legend.position = "r"
     colours = ("B7D3D6", "86B5BA", "57979F", "2E7984", "1F5C66", "123F47")
@@ -242,11 +249,14 @@ def checks(book: Workbook) -> None:
     cs.label(
         s,
         8,
-        "Mixture of 3 H2 : 1 N2 at equilibrium. Measured: Larson and Dodge, J. Am. Chem. Soc. 45 (1923) 2918 (from memory).",
+        "3 H2 : 1 N2 at equilibrium; measured: Larson and Dodge, JACS 45 (1923) 2918 (from memory).",
     )
     cs.column_heads(
         s, 10,
-        ["Temperature, degC", "Pressure, atm", "Measured, mol % NH3", "Ideal gas, mol % NH3", "Ideal over measured"],
+        [
+            "Temperature, degC", "Pressure, atm",
+            "Measured, mol % NH3", "Ideal gas, mol % NH3", "Ideal over measured",
+        ],
     )  # fmt: skip
     for row, (celsius, atmospheres, percent) in enumerate(MEASURED, 11):
         cs.entry(s, f"A{row}", float(celsius), "0")
@@ -254,14 +264,13 @@ def checks(book: Workbook) -> None:
         cs.entry(s, f"C{row}", percent, "0.00")
         cs.step(
             s, f"D{row}",
-            f'=100*XLEQ_COMPOSITION_P("1/2 N2 + 3/2 H2 = NH3",10^(-2.691122*LOG10(A{row}+273.15)-0.00005519265*(A{row}+273.15)'
-            f'+0.0000001848863*(A{row}+273.15)^2+2001.6/(A{row}+273.15)+2.6899),"N2; H2; NH3","1; 3; 0",A{row}&" degC",B{row}&" atm",'
-            '"fractions NH3","basis=Kp[atm]")',
+            f'=100*XLEQ_COMPOSITION_P("1/2 N2 + 3/2 H2 = NH3",10^({log10_kp_half(f"(A{row}+273.15)")}),'
+            f'"N2; H2; NH3","1; 3; 0",A{row}&" degC",B{row}&" atm","fractions NH3","basis=Kp[atm]")',
             "0.00",
         )  # fmt: skip
         cs.step(s, f"E{row}", f"=D{row}/C{row}-1", "+0.0%;-0.0%")
     cs.label(s, 18, "Largest departure at 10 atm")
-    cs.result(s, "D18", "=MAX(INDEX(ABS(E11:E14),0))", "0.0%")
+    cs.result(s, "D18", "=MAX(MAX(E11:E14),-MIN(E11:E14))", "0.0%")
     cs.label(s, 19, "At 100 atm the ideal gas falls short: a real-gas calculation is needed there.")
     cs.label(s, 21, "Program")
     cs.step(s, "B21", "=XLEQ_VERSION()")

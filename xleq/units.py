@@ -257,6 +257,18 @@ def read_quantity(text: str, quantity: Quantity) -> float:
     return checked(value, quantity, text)
 
 
+def number_or_none(text: str) -> float | None:
+    """The number that a text is, without a unit; None if it is anything else.
+
+    Examples
+    --------
+    >>> number_or_none("4.5E2"), number_or_none("450 degC")
+    (450.0, None)
+    """
+    match = _NUMBER.fullmatch(text)
+    return float(match[1]) if match and not match[2] else None
+
+
 def checked(value: float, quantity: Quantity, text: str = "") -> float:
     """The value itself, if physics allows it for the quantity.
 

@@ -10,7 +10,7 @@ from rich.console import Console
 from rich.markup import escape
 from rich.table import Table
 
-from xleq.cells import Value
+from xleq.cli.show import plain_grid, shown
 from xleq.functions import TABLE
 from xleq.functions.table import Function
 
@@ -54,7 +54,7 @@ def as_record(function: Function) -> dict[str, object]:
         ],
         "errors": list(function.errors),
         "source": function.source,
-        "examples": [{"formula": e.formula, "shows": e.shows} for e in function.examples],
+        "examples": [{"formula": e.formula, "shows": plain_grid(e.shows)} for e in function.examples],
     }
 
 
@@ -95,14 +95,3 @@ def _one(console: Console, function: Function) -> None:
             else shown(value)
         )
         console.print(f"example  {escape(example.formula)}\n         → {escape(text)}", soft_wrap=True)
-
-
-def shown(value: Value) -> str:
-    """A value as the terminal shows it: 15 digits, as a cell would."""
-    if isinstance(value, bool):
-        return "TRUE" if value else "FALSE"
-    if isinstance(value, float):
-        from xleq.recalc.texts import number_text
-
-        return number_text(value)
-    return str(value) if value is not None else ""

@@ -33,9 +33,7 @@ _ERRORS: Final = (
 )
 
 _REACTIONS: Final = Argument("reactions", "texts", "reactions, one a cell or with semicolons between them")
-_K: Final = Argument(
-    "K", "Ks", "constant of each reaction, on p° = 1 bar or as option basis says"
-)
+_K: Final = Argument("K", "Ks", "constant of each reaction, on p° = 1 bar or as option basis says")
 _SPECIES: Final = Argument(
     "species", "texts", "every species of the reactions, and those that only pass through"
 )
