@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 from tests.cases.reader import read
-from tests.equilibrium.systems import error_of, random_problem
+from tests.equilibrium.several_systems import error_of, random_problem
 from xleq.equilibrium import solve
 from xleq.equilibrium.many import solve as solve_several
 from xleq.equilibrium.problem import Problem, Solution, State

@@ -5,7 +5,7 @@ from fractions import Fraction
 import numpy as np
 import pytest
 
-from tests.equilibrium.systems import random_problem
+from tests.equilibrium.several_systems import random_problem
 from xleq.equilibrium.structure import (
     check_dependent,
     check_size,

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from xleq.equilibrium.newton import Path, System, log_sums, residual
+from xleq.equilibrium.many.newton import Path, System, log_sums, residual
 
 Floats = NDArray[np.float64]
 

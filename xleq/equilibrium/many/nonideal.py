@@ -12,10 +12,10 @@ from dataclasses import replace
 import numpy as np
 from numpy.typing import NDArray
 
-from xleq.equilibrium.newton import System
-from xleq.equilibrium.phases import Outcome, choose
+from xleq.equilibrium.many.newton import System
+from xleq.equilibrium.many.phases import Outcome, choose
+from xleq.equilibrium.many.response import Response
 from xleq.equilibrium.problem import Nonideality, State
-from xleq.equilibrium.response import Response
 
 Floats = NDArray[np.float64]
 

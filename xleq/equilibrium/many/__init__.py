@@ -9,16 +9,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from xleq.equilibrium.certificate import certify
-from xleq.equilibrium.newton import System
-from xleq.equilibrium.nonideal import choose_with_model
-from xleq.equilibrium.phases import Outcome, choose
-from xleq.equilibrium.problem import Certificate, Problem, Solution, Status, check
+from xleq.equilibrium.many.newton import System
+from xleq.equilibrium.many.nonideal import choose_with_model
+from xleq.equilibrium.many.phases import Outcome, choose
+from xleq.equilibrium.problem import SMALLEST_AMOUNT, Certificate, Problem, Solution, Status, check
 from xleq.equilibrium.structure import check_dependent, check_size, eliminate, formable, structure
 
 Floats = NDArray[np.float64]
 
-#: Amounts below this are given as 0: a double no longer holds them in full. [mol]
-SMALLEST_AMOUNT = 1e-300
 METHOD = "Newton in log moles on the most abundant basis, polished in 50 digits"
 
 

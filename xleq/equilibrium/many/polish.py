@@ -13,7 +13,7 @@ from decimal import Context, Decimal, localcontext
 import numpy as np
 from numpy.typing import NDArray
 
-from xleq.equilibrium.newton import Frame, Path, System, residual
+from xleq.equilibrium.many.newton import Frame, Path, System, residual
 from xleq.equilibrium.structure import exact_totals
 
 Floats = NDArray[np.float64]

@@ -15,9 +15,9 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
-from xleq.equilibrium.follow import NO_DRIVE, contradiction, first_guess, follow, with_phases
-from xleq.equilibrium.newton import MAX_STEPS, Frame, Path, System, continuation, frame, newton
-from xleq.equilibrium.polish import Polished, polish
+from xleq.equilibrium.many.follow import NO_DRIVE, contradiction, first_guess, follow, with_phases
+from xleq.equilibrium.many.newton import MAX_STEPS, Frame, Path, System, continuation, frame, newton
+from xleq.equilibrium.many.polish import Polished, polish
 from xleq.equilibrium.structure import exact_totals
 
 Floats = NDArray[np.float64]

@@ -11,7 +11,7 @@ from dataclasses import replace
 import numpy as np
 from numpy.typing import NDArray
 
-from xleq.equilibrium.newton import Path, System, frame, ln_amounts, log_sums, newton
+from xleq.equilibrium.many.newton import Path, System, frame, ln_amounts, log_sums, newton
 from xleq.equilibrium.structure import exact_totals
 
 Floats = NDArray[np.float64]
