@@ -149,6 +149,13 @@ def test_a_quotient_of_gas_counts_inert_species_and_passes_pure_phases_over() ->
     assert call("XLEQ_Q", "CaCO3(s) = CaO(s) + CO2", "CaO(s); CO2; N2", "5; 1; 3", 2.0) == q
 
 
+def test_a_range_drawn_longer_than_its_list_is_as_good() -> None:
+    names: Grid = [["N2O4"], ["NO2"], [BLANK], [BLANK]]
+    amounts: Grid = [[1.0], [1.0], [BLANK], [BLANK]]
+    assert call("XLEQ_Q", "N2O4 = 2 NO2", names, amounts, 2.0) == pytest.approx(1.0, rel=1e-14)
+    assert call("XLEQ_K_FROM_FIT", [[0.0, 0.0, BLANK, BLANK]], 300.0) == 1.0
+
+
 def test_a_quotient_without_product_is_zero() -> None:
     assert call("XLEQ_Q", "N2O4 = 2 NO2", "N2O4; NO2", [[1.0], [BLANK]], 1.0) == 0.0
 

@@ -94,11 +94,22 @@ def _q(
 def _amounts(block: Grid, n: int, p: float | None, basis: str) -> tuple[float, ...]:
     """Moles where there is a total to take fractions of, else concentrations."""
     moles = p is not None or kx.parse_basis(basis).kind == "Kx"
-    given: Value | Grid = block if len(block) > 1 or len(block[0]) > 1 else block[0][0]
-    numbers: tuple[float, ...] = READERS["amounts" if moles else "concentrations"](given, ())
+    numbers: tuple[float, ...] = READERS["amounts" if moles else "concentrations"](_listed(block, n), ())
     if len(numbers) != n:
         raise InputError(f"{n} species, but {len(numbers)} amounts; give one amount a species")
     return numbers
+
+
+def _listed(block: Grid, least: int = 0) -> Value | Grid:
+    """A list as the readers take it, without the empty cells at its end that are more than the least."""
+    if len(block) == 1 and len(block[0]) == 1:
+        return block[0][0]
+    if len(block) > 1 and len(block[0]) > 1:
+        return block
+    items = [v for row in block for v in row]
+    while len(items) > least and items[-1] is BLANK:
+        items.pop()
+    return [items]
 
 
 def _affinity(k: float, q: float, t: float) -> float:
@@ -142,13 +153,7 @@ def read_fit(block: Grid) -> kx.Fit:
     """
     if len(block) > 4 and len(block[0]) >= 6 and block[0][0] == "term":
         return _read_fit_block(block)
-    given: Value | Grid = block if len(block) > 1 or len(block[0]) > 1 else block[0][0]
-    if isinstance(given, list):
-        items = [v for row in given for v in row]
-        while items and items[-1] is BLANK:
-            items.pop()
-        given = [items] if len(given) == 1 or len(given[0]) == 1 else given
-    numbers: tuple[float, ...] = READERS["numbers"](given, ())
+    numbers: tuple[float, ...] = READERS["numbers"](_listed(block), ())
     if not 2 <= len(numbers) <= 4:
         raise InputError(f"{len(numbers)} coefficients; a fit has 2, 3 or 4: a, b/T, c ln T, d T")
     return kx.Fit(numbers)

@@ -22,7 +22,19 @@ _SUBSCRIPTS: Final = "₀₁₂₃₄₅₆₇₈₉"
 _SUPERSCRIPTS: Final = "⁰¹²³⁴⁵⁶⁷⁸⁹"
 #: Same length before and after, so that positions stay true.
 _PLAIN: Final = str.maketrans(
-    {"−": "-", "–": "-", "•": "·", "∙": "·", "⋅": "·", "*": "·", "⁄": "/", "₊": "+", "₋": "-"}
+    {
+        "−": "-",
+        "–": "-",
+        "‐": "-",
+        "‑": "-",
+        "•": "·",
+        "∙": "·",
+        "⋅": "·",
+        "*": "·",
+        "⁄": "/",
+        "₊": "+",
+        "₋": "-",
+    }
 )
 _DIGITS: Final = str.maketrans(_SUBSCRIPTS + _SUPERSCRIPTS + "⁺⁻", "0123456789" * 2 + "+-")
 _SIGNS: Final = str.maketrans("⁺⁻", "+-")
