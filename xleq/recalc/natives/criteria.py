@@ -223,4 +223,4 @@ def _bare(operator: str | None) -> Criterion:
         return Criterion("<>", BLANK, _never, False)
     if operator == "=":
         return Criterion("=", BLANK, _never, True)
-    return Criterion(operator, "", _text_order(operator, ""), False)  # type: ignore[arg-type]
+    return Criterion(operator, "", _never, False)  # type: ignore[arg-type]

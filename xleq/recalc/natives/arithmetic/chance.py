@@ -6,8 +6,8 @@ import math
 
 from xleq.cells import VALUE
 from xleq.recalc.context import Context
-from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.table import native
+from xleq.recalc.natives.tools import tool
 from xleq.recalc.operands import Array, Fail
 
 _MOST = 1_000_000
@@ -23,8 +23,7 @@ def _whole_between(context: Context, low: int, high: int) -> float:
     return float(low + math.floor(context.random() * (high - low + 1)))
 
 
-@native("RANDBETWEEN", "number number", context=True, volatile=True)
-@guarded
+@tool("RANDBETWEEN", "number number", context=True, volatile=True)
 def randbetween(context: Context, low: float, high: float) -> float:
     """A whole number between limits, both included."""
     first, last = math.ceil(low), math.floor(high)

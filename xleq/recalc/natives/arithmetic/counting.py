@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import math
 
-from xleq.recalc.natives.gather import guarded, numbers_of
+from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.table import native
+from xleq.recalc.natives.tools import tool, tool_numbers
 from xleq.recalc.operands import Argument
 
 _LARGEST_WHOLE = 2.0**53
@@ -61,7 +62,7 @@ def fact(x: float) -> float:
     return float(math.factorial(n))
 
 
-@native("FACTDOUBLE", "number")
+@tool("FACTDOUBLE", "number")
 def factdouble(x: float) -> float:
     """Product of every second whole number down to 1 or 2.
 
@@ -107,7 +108,7 @@ def permutationa(n: float, k: float) -> float:
 
 
 def _whole_list(arguments: tuple[Argument, ...]) -> list[int]:
-    values = numbers_of(arguments, logicals=False)
+    values = tool_numbers(arguments)
     if any(not 0.0 <= v < _LARGEST_WHOLE for v in values):
         raise ValueError
     return [int(v) for v in values]

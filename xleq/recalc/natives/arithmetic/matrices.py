@@ -37,7 +37,10 @@ def mmult(left: Array, right: Array) -> Array:
     a, b = _matrix(left), _matrix(right)
     if left.width != right.height:
         raise Fail(VALUE)
-    return array_of(a @ b)
+    import numpy as np
+
+    with np.errstate(all="ignore"):
+        return array_of(a @ b)
 
 
 @native("MINVERSE", "array")

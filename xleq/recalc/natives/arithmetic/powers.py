@@ -7,8 +7,8 @@ from typing import TYPE_CHECKING
 
 from xleq.cells import CellError
 from xleq.recalc.natives.arithmetic.vectors import elementwise
-from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.table import native
+from xleq.recalc.natives.tools import tool
 from xleq.recalc.operands import Array, Fail
 
 if TYPE_CHECKING:
@@ -55,7 +55,7 @@ def sqrt(x: float) -> float:
     return math.sqrt(x)
 
 
-@native("SQRTPI", "number")
+@tool("SQRTPI", "number")
 def sqrtpi(x: float) -> float:
     """Square root of x·π."""
     return math.sqrt(x * math.pi)
@@ -101,8 +101,7 @@ def pi() -> float:
     return math.pi
 
 
-@native("SERIESSUM", "number number number array")
-@guarded
+@tool("SERIESSUM", "number number number array")
 def seriessum(x: float, first: float, step: float, coefficients: Array) -> float:
     """Sum of a[i]·x^(first + i·step)."""
     total = 0.0

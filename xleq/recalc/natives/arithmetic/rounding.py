@@ -11,6 +11,7 @@ from decimal import ROUND_DOWN, ROUND_HALF_UP, ROUND_UP, Context, Decimal
 
 from xleq.recalc.natives.arithmetic.vectors import elementwise
 from xleq.recalc.natives.table import native
+from xleq.recalc.natives.tools import tool
 
 _WIDE = Context(prec=330)
 _MOD_LIMIT = 1_125_900_000_000.0
@@ -131,13 +132,13 @@ def mod(x: float, divisor: float) -> float:
     return x % divisor + 0.0
 
 
-@native("QUOTIENT", "number number")
+@tool("QUOTIENT", "number number")
 def quotient(x: float, divisor: float) -> float:
     """Whole part of a division."""
     return float(math.trunc(x / divisor))
 
 
-@native("MROUND", "number number")
+@tool("MROUND", "number number")
 def mround(x: float, step: float) -> float:
     """Nearest multiple, halves away from zero."""
     if x == 0.0 or step == 0.0:

@@ -106,7 +106,7 @@ def tanh(x: float) -> float:
 @native("COTH", "number")
 def coth(x: float) -> float:
     """Hyperbolic cotangent."""
-    return 1.0 / math.tanh(_angle(x))
+    return 1.0 / math.tanh(x)
 
 
 def _inverse_cosh(x: float) -> float:
@@ -116,13 +116,13 @@ def _inverse_cosh(x: float) -> float:
 @native("SECH", "number")
 def sech(x: float) -> float:
     """Hyperbolic secant."""
-    return _inverse_cosh(_angle(x))
+    return _inverse_cosh(x)
 
 
 @native("CSCH", "number")
 def csch(x: float) -> float:
     """Hyperbolic cosecant."""
-    if abs(_angle(x)) < 700.0:
+    if abs(x) < 700.0:
         return 1.0 / math.sinh(x)
     return math.copysign(_inverse_cosh(x), x)
 

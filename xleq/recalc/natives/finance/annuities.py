@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 
 from xleq.recalc.natives.table import native
+from xleq.recalc.natives.tools import tool
 
 
 def _growth(rate: float, periods: float) -> float:
@@ -123,7 +124,7 @@ def _checked(rate: float, periods: float, present: float, first: float, last: fl
         raise ValueError
 
 
-@native("CUMIPMT", "number number number number number number")
+@tool("CUMIPMT", "number number number number number number")
 def cumipmt(rate: float, periods: float, present: float, first: float, last: float, start: float) -> float:
     """Interest paid over some periods."""
     _checked(rate, periods, present, first, last, start)
@@ -133,7 +134,7 @@ def cumipmt(rate: float, periods: float, present: float, first: float, last: flo
     )
 
 
-@native("CUMPRINC", "number number number number number number")
+@tool("CUMPRINC", "number number number number number number")
 def cumprinc(rate: float, periods: float, present: float, first: float, last: float, start: float) -> float:
     """Repayment over some periods."""
     _checked(rate, periods, present, first, last, start)
@@ -149,7 +150,7 @@ def ispmt(rate: float, period: float, periods: float, present: float) -> float:
     return present * rate * (period / periods - 1.0)
 
 
-@native("EFFECT", "number number")
+@tool("EFFECT", "number number")
 def effect(nominal: float, per_year: float) -> float:
     """Effective yearly rate."""
     n = math.trunc(per_year)
@@ -158,7 +159,7 @@ def effect(nominal: float, per_year: float) -> float:
     return float((1.0 + nominal / n) ** n) - 1.0
 
 
-@native("NOMINAL", "number number")
+@tool("NOMINAL", "number number")
 def nominal(effective: float, per_year: float) -> float:
     """Nominal yearly rate."""
     n = math.trunc(per_year)
@@ -192,7 +193,7 @@ def _fraction(value: float) -> tuple[int, float]:
     return parts, 10.0 ** math.ceil(math.log10(parts)) if parts > 1 else 10.0
 
 
-@native("DOLLARDE", "number number")
+@tool("DOLLARDE", "number number")
 def dollarde(price: float, fraction: float) -> float:
     """Decimal price from one whose decimals count a fraction."""
     parts, scale = _fraction(fraction)
@@ -200,7 +201,7 @@ def dollarde(price: float, fraction: float) -> float:
     return whole + (price - whole) * scale / parts
 
 
-@native("DOLLARFR", "number number")
+@tool("DOLLARFR", "number number")
 def dollarfr(price: float, fraction: float) -> float:
     """Price whose decimals count a fraction from a decimal one."""
     parts, scale = _fraction(fraction)

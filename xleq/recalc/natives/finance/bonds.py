@@ -8,8 +8,7 @@ from dataclasses import dataclass
 
 from xleq.recalc.context import Context
 from xleq.recalc.natives.finance.daycount import Calendar, checked_basis, checked_day, checked_frequency
-from xleq.recalc.natives.gather import guarded
-from xleq.recalc.natives.table import native
+from xleq.recalc.natives.tools import tool
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,8 +46,7 @@ def _place(context: Context, settlement: float, maturity: float, frequency: floa
 
 
 def _declare_coupon(name: str, part: Callable[[Place], float]) -> None:
-    @native(name, "number number number number?", context=True)
-    @guarded
+    @tool(name, "number number number number?", context=True)
     def coupon(
         context: Context, settlement: float, maturity: float, frequency: float, basis: float = 0.0
     ) -> float:
@@ -75,8 +73,7 @@ def _price(place: Place, rate: float, yield_: float, redemption: float, per_year
     return last + coupons - accrued
 
 
-@native("PRICE", "number number number number number number number?", context=True)
-@guarded
+@tool("PRICE", "number number number number number number number?", context=True)
 def price(
     context: Context, settlement: float, maturity: float, rate: float, yield_: float, redemption: float,
     frequency: float, basis: float = 0.0,
@@ -106,8 +103,7 @@ def _solved(price_at: Callable[[float], float], wanted: float, guess: float) -> 
     raise ValueError
 
 
-@native("YIELD", "number number number number number number number?", context=True)
-@guarded
+@tool("YIELD", "number number number number number number number?", context=True)
 def yield_of(
     context: Context, settlement: float, maturity: float, rate: float, paid: float, redemption: float,
     frequency: float, basis: float = 0.0,
@@ -123,8 +119,7 @@ def yield_of(
     return _solved(lambda y: _price(place, rate, y, redemption, per_year), paid, rate or 0.1)
 
 
-@native("DURATION", "number number number number number number?", context=True)
-@guarded
+@tool("DURATION", "number number number number number number?", context=True)
 def duration(
     context: Context, settlement: float, maturity: float, rate: float, yield_: float, frequency: float,
     basis: float = 0.0,
@@ -141,8 +136,7 @@ def duration(
     return weighted / math.fsum(present) / per_year
 
 
-@native("MDURATION", "number number number number number number?", context=True)
-@guarded
+@tool("MDURATION", "number number number number number number?", context=True)
 def mduration(
     context: Context, settlement: float, maturity: float, rate: float, yield_: float, frequency: float,
     basis: float = 0.0,
@@ -204,8 +198,7 @@ def _odd_first(
     )
 
 
-@native("ODDFPRICE", "number number number number number number number number number?", context=True)
-@guarded
+@tool("ODDFPRICE", "number number number number number number number number number?", context=True)
 def oddfprice(
     context: Context, settlement: float, maturity: float, issue: float, first: float, rate: float,
     yield_: float, redemption: float, frequency: float, basis: float = 0.0,
@@ -217,8 +210,7 @@ def oddfprice(
     return bond.price(rate, yield_, redemption, checked_frequency(frequency))
 
 
-@native("ODDFYIELD", "number number number number number number number number number?", context=True)
-@guarded
+@tool("ODDFYIELD", "number number number number number number number number number?", context=True)
 def oddfyield(
     context: Context, settlement: float, maturity: float, issue: float, first: float, rate: float,
     paid: float, redemption: float, frequency: float, basis: float = 0.0,
@@ -246,8 +238,7 @@ def _odd_last(
     )
 
 
-@native("ODDLPRICE", "number number number number number number number number?", context=True)
-@guarded
+@tool("ODDLPRICE", "number number number number number number number number?", context=True)
 def oddlprice(
     context: Context, settlement: float, maturity: float, last: float, rate: float, yield_: float,
     redemption: float, frequency: float, basis: float = 0.0,
@@ -261,8 +252,7 @@ def oddlprice(
     return (redemption + whole * coupon) / (1.0 + left * yield_ / per_year) - gone * coupon
 
 
-@native("ODDLYIELD", "number number number number number number number number?", context=True)
-@guarded
+@tool("ODDLYIELD", "number number number number number number number number?", context=True)
 def oddlyield(
     context: Context, settlement: float, maturity: float, last: float, rate: float, paid: float,
     redemption: float, frequency: float, basis: float = 0.0,

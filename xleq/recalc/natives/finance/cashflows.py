@@ -16,11 +16,7 @@ from xleq.recalc.operands import Argument, Array, Fail
 @guarded
 def npv(rate: float, *flows: Argument) -> float:
     """Net present value, one period before the first flow."""
-    total, factor = 0.0, 1.0
-    for flow in numbers_of(flows):
-        factor *= 1.0 + rate
-        total += flow / factor
-    return total
+    return sum((flow / (1.0 + rate) ** i for i, flow in enumerate(numbers_of(flows), 1)), 0.0)
 
 
 def _root(value: Callable[[float], tuple[float, float]], guess: float) -> float:

@@ -6,8 +6,7 @@ import math
 
 from xleq.recalc.context import Context
 from xleq.recalc.natives.finance.daycount import Calendar, checked_basis, checked_day, checked_frequency
-from xleq.recalc.natives.gather import guarded
-from xleq.recalc.natives.table import native
+from xleq.recalc.natives.tools import tool
 
 
 def _years(context: Context, start: float, end: float, basis: float) -> float:
@@ -18,8 +17,7 @@ def _years(context: Context, start: float, end: float, basis: float) -> float:
     return calendar.year_fraction(first, last)
 
 
-@native("DISC", "number number number number number?", context=True)
-@guarded
+@tool("DISC", "number number number number number?", context=True)
 def disc(
     context: Context, settlement: float, maturity: float, price: float, redemption: float, basis: float = 0.0
 ) -> float:
@@ -29,8 +27,7 @@ def disc(
     return (redemption - price) / redemption / _years(context, settlement, maturity, basis)
 
 
-@native("PRICEDISC", "number number number number number?", context=True)
-@guarded
+@tool("PRICEDISC", "number number number number number?", context=True)
 def pricedisc(
     context: Context, settlement: float, maturity: float, rate: float, redemption: float, basis: float = 0.0
 ) -> float:
@@ -40,8 +37,7 @@ def pricedisc(
     return redemption - rate * redemption * _years(context, settlement, maturity, basis)
 
 
-@native("YIELDDISC", "number number number number number?", context=True)
-@guarded
+@tool("YIELDDISC", "number number number number number?", context=True)
 def yielddisc(
     context: Context, settlement: float, maturity: float, price: float, redemption: float, basis: float = 0.0
 ) -> float:
@@ -49,8 +45,7 @@ def yielddisc(
     return intrate(context, settlement, maturity, price, redemption, basis)
 
 
-@native("INTRATE", "number number number number number?", context=True)
-@guarded
+@tool("INTRATE", "number number number number number?", context=True)
 def intrate(
     context: Context, settlement: float, maturity: float, paid: float, redemption: float, basis: float = 0.0
 ) -> float:
@@ -60,8 +55,7 @@ def intrate(
     return (redemption - paid) / paid / _years(context, settlement, maturity, basis)
 
 
-@native("RECEIVED", "number number number number number?", context=True)
-@guarded
+@tool("RECEIVED", "number number number number number?", context=True)
 def received(
     context: Context, settlement: float, maturity: float, paid: float, rate: float, basis: float = 0.0
 ) -> float:
@@ -90,8 +84,7 @@ def _at_maturity(
     )
 
 
-@native("PRICEMAT", "number number number number number number?", context=True)
-@guarded
+@tool("PRICEMAT", "number number number number number number?", context=True)
 def pricemat(
     context: Context, settlement: float, maturity: float, issue: float, rate: float, yield_: float,
     basis: float = 0.0,
@@ -103,8 +96,7 @@ def pricemat(
     return 100.0 * ((1.0 + whole * rate) / (1.0 + left * yield_) - gone * rate)
 
 
-@native("YIELDMAT", "number number number number number number?", context=True)
-@guarded
+@tool("YIELDMAT", "number number number number number number?", context=True)
 def yieldmat(
     context: Context, settlement: float, maturity: float, issue: float, rate: float, paid: float,
     basis: float = 0.0,
@@ -117,8 +109,7 @@ def yieldmat(
     return (1.0 + whole * rate - owed) / owed / left
 
 
-@native("ACCRINTM", "number number number number~ number?", context=True)
-@guarded
+@tool("ACCRINTM", "number number number number~ number?", context=True)
 def accrintm(
     context: Context, issue: float, settlement: float, rate: float, par: float = 1000.0, basis: float = 0.0
 ) -> float:
@@ -128,8 +119,7 @@ def accrintm(
     return par * rate * _years(context, issue, settlement, basis)
 
 
-@native("ACCRINT", "number number number number number~ number number? logical~", context=True)
-@guarded
+@tool("ACCRINT", "number number number number number~ number number? logical~", context=True)
 def accrint(
     context: Context,
     issue: float,
@@ -158,7 +148,7 @@ def _bill_days(settlement: float, maturity: float) -> int:
     return end - start
 
 
-@native("TBILLPRICE", "number number number")
+@tool("TBILLPRICE", "number number number")
 def tbillprice(settlement: float, maturity: float, discount: float) -> float:
     """Price of a treasury bill."""
     price = 100.0 * (1.0 - discount * _bill_days(settlement, maturity) / 360.0)
@@ -167,7 +157,7 @@ def tbillprice(settlement: float, maturity: float, discount: float) -> float:
     return price
 
 
-@native("TBILLYIELD", "number number number")
+@tool("TBILLYIELD", "number number number")
 def tbillyield(settlement: float, maturity: float, price: float) -> float:
     """Yield of a treasury bill."""
     if price <= 0.0:
@@ -175,7 +165,7 @@ def tbillyield(settlement: float, maturity: float, price: float) -> float:
     return (100.0 - price) / price * 360.0 / _bill_days(settlement, maturity)
 
 
-@native("TBILLEQ", "number number number")
+@tool("TBILLEQ", "number number number")
 def tbilleq(settlement: float, maturity: float, discount: float) -> float:
     """Bond-equivalent yield of a treasury bill."""
     days = _bill_days(settlement, maturity)

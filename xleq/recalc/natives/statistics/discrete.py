@@ -9,6 +9,9 @@ from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.statistics.continuous import beta_below, gamma_above
 from xleq.recalc.natives.table import native
 
+#: Beyond it too few digits would be left.
+_MOST_TRIALS = 2**31 - 1
+
 
 def _share(p: float) -> float:
     if not 0.0 <= p <= 1.0:
@@ -42,7 +45,7 @@ def binomial_up_to(k: int, n: int, p: float) -> float:
 def binom_dist(successes: float, trials: float, p: float, cumulative: bool) -> float:
     """Binomial distribution."""
     k, n = math.trunc(successes), math.trunc(trials)
-    if not 0 <= k <= n:
+    if not 0 <= k <= n <= _MOST_TRIALS:
         raise ValueError
     return binomial_up_to(k, n, _share(p)) if cumulative else binomial(k, n, _share(p))
 
@@ -52,7 +55,7 @@ def binom_dist_range(trials: float, p: float, low: float, high: float | None = N
     """Chance of a number of successes, or of one between two numbers."""
     n, first = math.trunc(trials), math.trunc(low)
     last = first if high is None else math.trunc(high)
-    if n < 0 or not 0 <= first <= last <= n:
+    if not 0 <= first <= last <= n <= _MOST_TRIALS:
         raise ValueError
     if last - first <= 60:
         return math.fsum(binomial(k, n, _share(p)) for k in range(first, last + 1))
@@ -63,7 +66,7 @@ def binom_dist_range(trials: float, p: float, low: float, high: float | None = N
 def binom_inv(trials: float, p: float, alpha: float) -> float:
     """Smallest number of successes whose cumulative chance reaches alpha."""
     n = math.trunc(trials)
-    if n < 0 or not 0.0 < alpha < 1.0 or not 0.0 < p < 1.0:
+    if not 0 <= n <= _MOST_TRIALS or not 0.0 < alpha < 1.0 or not 0.0 < p < 1.0:
         raise ValueError
     low, high = 0, n
     while low < high:
@@ -80,13 +83,11 @@ def binom_inv(trials: float, p: float, alpha: float) -> float:
 def negbinom_dist(failures: float, successes: float, p: float, cumulative: bool) -> float:
     """Chance of a number of failures before a number of successes."""
     k, r = math.trunc(failures), math.trunc(successes)
-    if k < 0 or r < 1:
+    if k < 0 or r < 1 or not 0.0 < p < 1.0:
         raise ValueError
-    chance = _share(p)
+    chance = p
     if cumulative:
         return beta_below(chance, float(r), k + 1.0)
-    if chance in (0.0, 1.0):
-        return float(chance == 1.0 and k == 0)
     if k + r < 1000:
         return combinations(k + r - 1, k) * chance**r * (1.0 - chance) ** k
     ways = math.lgamma(k + r) - math.lgamma(k + 1) - math.lgamma(r)

@@ -8,6 +8,7 @@ from statistics import NormalDist
 
 from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.table import native
+from xleq.recalc.natives.tools import tool
 
 _ROOT_2 = math.sqrt(2.0)
 _ROOT_2PI = math.sqrt(2.0 * math.pi)
@@ -129,7 +130,7 @@ def confidence(alpha: float, deviation: float, size: float) -> float:
     return -normal_quantile(alpha / 2.0) * deviation / math.sqrt(math.trunc(size))
 
 
-@native("ERF", "number number?")
+@tool("ERF", "number number?")
 def erf(lower: float, upper: float | None = None) -> float:
     """Error function, from 0 or between limits."""
     if upper is None:
@@ -139,13 +140,13 @@ def erf(lower: float, upper: float | None = None) -> float:
     return math.erf(upper) - math.erf(lower)
 
 
-@native("ERF.PRECISE", "number")
+@tool("ERF.PRECISE", "number")
 def erf_precise(x: float) -> float:
     """Error function."""
     return math.erf(x)
 
 
-@native("ERFC ERFC.PRECISE", "number")
+@tool("ERFC ERFC.PRECISE", "number")
 def erfc(x: float) -> float:
     """One minus the error function."""
     return math.erfc(x)

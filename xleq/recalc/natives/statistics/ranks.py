@@ -5,12 +5,12 @@ from __future__ import annotations
 import math
 from bisect import bisect_left
 
-from xleq.cells import NA, NUM, VALUE
+from xleq.cells import DIV0, NA, NUM, VALUE
 from xleq.recalc.context import Context
 from xleq.recalc.natives.arithmetic.rounding import floor15
-from xleq.recalc.natives.gather import array_numbers
+from xleq.recalc.natives.gather import array_numbers, numbers_of
 from xleq.recalc.natives.table import native
-from xleq.recalc.operands import Array, Fail, Ref
+from xleq.recalc.operands import Argument, Array, Fail, Ref
 
 
 def nth(numbers: list[float], k: float, *, largest: bool) -> float:
@@ -21,16 +21,16 @@ def nth(numbers: list[float], k: float, *, largest: bool) -> float:
     return sorted(numbers, reverse=largest)[place - 1]
 
 
-@native("LARGE", "array number")
-def large(array: Array, k: float) -> float:
+@native("LARGE", "list number")
+def large(array: Argument, k: float) -> float:
     """Kth largest number."""
-    return nth(array_numbers(array), k, largest=True)
+    return nth(numbers_of([array]), k, largest=True)
 
 
-@native("SMALL", "array number")
-def small(array: Array, k: float) -> float:
+@native("SMALL", "list number")
+def small(array: Argument, k: float) -> float:
     """Kth smallest number."""
-    return nth(array_numbers(array), k, largest=False)
+    return nth(numbers_of([array]), k, largest=False)
 
 
 def _beaten(context: Context, x: float, ref: Ref, order: float) -> tuple[int, int]:
@@ -160,6 +160,8 @@ def prob(values: Array, chances: Array, low: float, high: float | None = None) -
     if values.height * values.width != chances.height * chances.width:
         raise Fail(NA)
     xs, ps = array_numbers(values), array_numbers(chances)
+    if not xs or not ps:
+        raise Fail(DIV0)
     if len(xs) != len(ps):
         raise Fail(VALUE)
     if any(not 0.0 < p <= 1.0 for p in ps) or abs(sum(ps) - 1.0) > 1e-9:
