@@ -100,7 +100,8 @@ def test_the_half_reaction_in_atm_is_that_of_the_full_one_in_bar() -> None:
 )  # fmt: skip
 def test_a_basis_is_read(text: str, kind: str, size: float) -> None:
     basis = parse_basis(text)
-    assert (basis.kind, basis.size) == (kind, pytest.approx(size, rel=1e-14))
+    assert basis.kind == kind
+    assert basis.size == pytest.approx(size, rel=1e-14)
     assert parse_basis(str(basis)) == basis
 
 

@@ -92,6 +92,12 @@ def test_what_cannot_be_balanced_is_refused_with_its_reason(
         balance(text)
 
 
+def test_too_many_species_are_refused_at_once() -> None:
+    side = " + ".join(f"C{n}H{2 * n + 2}" for n in range(1, 60))
+    with pytest.raises(InputError, match="61 species; one reaction of at most 40"):
+        balance(f"{side} = C + H2")
+
+
 matrices = st.integers(1, 5).flatmap(
     lambda n: st.lists(
         st.lists(st.integers(-4, 4).map(Fraction), min_size=n, max_size=n), min_size=1, max_size=5

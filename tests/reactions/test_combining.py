@@ -113,6 +113,11 @@ def test_multipliers_that_do_not_exist_or_are_not_unique_are_refused(
         multipliers(parse_reaction(target), [parse_reaction(p) for p in parts])
 
 
+def test_too_many_reactions_are_refused_at_once() -> None:
+    with pytest.raises(InputError, match="101 reactions; multipliers are found for at most 100"):
+        multipliers(AMMONIA, [AMMONIA] * 101)
+
+
 @pytest.mark.parametrize(
     ("text", "basis", "expected"),
     [

@@ -5,11 +5,15 @@ from __future__ import annotations
 import re
 from collections.abc import Sequence
 from fractions import Fraction
+from typing import Final
 
 from xleq.errors import AmbiguousError, BalanceError, InputError, NoAnswerError
 from xleq.reactions.equations import Reaction, Term, parse_reaction, reaction_text
 from xleq.reactions.linear import null_space, smallest_integers
 from xleq.reactions.species import Species
+
+#: Exact elimination of a dense matrix of this size takes seconds; no reaction that is written is near it.
+_MOST_SPECIES: Final = 40
 
 
 def unchecked_species(reaction: Reaction) -> tuple[str, ...]:
@@ -110,7 +114,7 @@ def balance(text: str) -> str:
     ParseError
         If the text cannot be read.
     InputError
-        If a species has no formula, or stands on both sides.
+        If a species has no formula, or stands there twice, or there are more than 40.
     NoAnswerError
         If no coefficients balance it, or only with a species on the other side.
     AmbiguousError
@@ -126,6 +130,8 @@ def balance(text: str) -> str:
     reaction = parse_reaction(text)
     sides = [(-1, t.species) for t in reaction.left] + [(1, t.species) for t in reaction.right]
     species = [s for _, s in sides]
+    if len(species) > _MOST_SPECIES:
+        raise InputError(f"{len(species)} species; one reaction of at most {_MOST_SPECIES} can be balanced")
     for one in species:
         if one.formula is None:
             raise InputError(f"{one.name} has no formula, so the reaction cannot be balanced")

@@ -15,6 +15,7 @@ from xleq.reactions.species import Phase, Species
 
 _LARGEST_DENOMINATOR: Final = 1000
 _LARGEST_MULTIPLIER: Final = 1e6
+_MOST_REACTIONS: Final = 100
 
 
 def exact_multiplier(value: float) -> Fraction:
@@ -140,6 +141,8 @@ def multipliers(target: Reaction, reactions: Sequence[Reaction]) -> list[Fractio
     """
     if not reactions:
         raise InputError("no reactions are given to combine")
+    if len(reactions) > _MOST_REACTIONS:
+        raise InputError(f"{len(reactions)} reactions; multipliers are found for at most {_MOST_REACTIONS}")
     target, *parts = with_same_phases([target, *reactions])
     every = list(dict.fromkeys(s for r in (target, *parts) for s in r.species))
     rows = [[r.coefficient(s) or Fraction(0) for r in (*parts, target)] for s in every]
