@@ -9,7 +9,7 @@ from xleq.errors import InputError
 from xleq.recalc.days import MONTHS, SECONDS, WEEKDAYS, day_parts, is_day, weekday
 from xleq.recalc.formats.sections import Section, Token
 
-#: Seconds short of the next second that still count as that second where seconds are not shown.
+#: Seconds short of midnight that still count as the next day where only the date is shown.
 _ALMOST: Final = 1e-4
 
 
@@ -26,16 +26,14 @@ def date_section(x: float, section: Section, date_1904: bool) -> str:
     if x < 0 and not (elapsed or date_1904):
         raise InputError("a negative number is not a date")
     places = max((len(t.text) for t in tokens if t.kind == "fraction"), default=0)
-    seconds_shown = any(t.kind == "second" for t in tokens) or "s" in elapsed
     total = abs(x) * SECONDS
-    if seconds_shown:
+    if elapsed or section.has("hour", "minute", "second"):
         ticks = math.floor(total * 10**places + 0.5)
     else:
         ticks = math.floor(total + _ALMOST)
-        places = 0
     seconds, fraction = divmod(ticks, 10**places)
     day = seconds // SECONDS
-    if not elapsed and not is_day(day, date_1904):
+    if not is_day(day, date_1904):
         raise InputError(f"{x:g} is beyond the last date, 31 December 9999")
     clock = _Clock(day, seconds, f"{fraction:0{places}d}" if places else "", elapsed, section, date_1904)
     text = "".join(clock.shown(t) for t in tokens)

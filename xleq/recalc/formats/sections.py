@@ -50,6 +50,12 @@ class Section:
 
     tokens: tuple[Token, ...]
     condition: Condition | None = None
+    foreign: bool = False
+
+    @property
+    def names_foreign(self) -> bool:
+        """Whether it shows months or days by their names in another language than English."""
+        return self.foreign and any(t.kind in ("month", "day") and len(t.text) > 2 for t in self.tokens)
 
     def has(self, *kinds: TokenKind) -> bool:
         """Whether a token of one of these kinds stands in it."""
@@ -118,10 +124,12 @@ class _Reader:
     def __init__(self, code: str) -> None:
         self.code = code
         self.at = 0
+        self.foreign = False
 
     def section(self) -> Section:
         tokens: list[Token] = []
         condition: Condition | None = None
+        self.foreign = False
         while self.at < len(self.code) and self.code[self.at] != ";":
             if self.code[self.at] == "[":
                 found = self._bracket(tokens)
@@ -130,7 +138,7 @@ class _Reader:
                 tokens.append(self._token())
         tokens = _with_minutes(tokens)
         self._check(tokens)
-        return Section(tuple(tokens), condition)
+        return Section(tuple(tokens), condition, self.foreign)
 
     def _until(self, end: str) -> str:
         start = self.at + 1
@@ -151,8 +159,9 @@ class _Reader:
             if system:
                 tokens += _Reader(system).section().tokens
                 self.at = self.code.find(";", self.at) if ";" in self.code[self.at :] else len(self.code)
-            elif symbol:
-                tokens.append(Token("literal", symbol))
+            else:
+                tokens += [Token("literal", symbol)] if symbol else []
+                self.foreign = self.foreign or not _is_english(locale)
         elif match := _CONDITION.fullmatch(inner):
             limit = float(match[2])
             negative = (match[1] == "<" and limit <= 0) or (match[1] in ("<=", "=") and limit < 0)
@@ -188,6 +197,14 @@ class _Reader:
             raise ParseError(self.code, 0, "either a number or a date in one section")
         if "exponent" in kinds and "digit" not in kinds:
             raise ParseError(self.code, 0, "digits beside the exponent")
+
+
+def _is_english(locale: str) -> bool:
+    """Whether a locale, a tag or a hexadecimal number whose low ten bits are the language, is English."""
+    tag = locale.split(",")[0].lower()
+    if not tag or tag.startswith("en"):
+        return True
+    return re.fullmatch("[0-9a-f]+", tag) is not None and int(tag, 16) & 0x3FF in (0, 9)
 
 
 def _with_minutes(tokens: list[Token]) -> list[Token]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from xleq.cells import Blank, CellError, Value
-from xleq.errors import InputError
+from xleq.errors import FormulaError, InputError
 from xleq.recalc.formats.dates import date_section
 from xleq.recalc.formats.numbers import general_text, number_section
 from xleq.recalc.formats.sections import Section, read_code
@@ -25,6 +25,8 @@ def format_value(value: Value, code: str, date_1904: bool = False) -> str:
     ------
     InputError
         If the code is not a number format, or the number is no date where a date is shown.
+    FormulaError
+        If the code asks for names of months or days in another language.
 
     Examples
     --------
@@ -64,6 +66,8 @@ def _number(x: float, sections: tuple[Section, ...], date_1904: bool) -> str:
         if len(sections) == 1:
             return general_text(x)
         raise InputError("no section of the number format takes this number")
+    if section.names_foreign:
+        raise FormulaError("the format shows months or days in another language than English")
     if section.is_date and not section.has("digit"):
         return date_section(abs(x) if unsigned else x, section, date_1904)
     if section.has("general"):

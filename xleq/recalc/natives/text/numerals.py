@@ -6,8 +6,9 @@ import re
 from decimal import Decimal
 
 from xleq.cells import BLANK, CellError, Value
-from xleq.errors import InputError
+from xleq.errors import FormulaError, InputError
 from xleq.recalc.coerce import to_text
+from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.formats import format_value
 from xleq.recalc.formats.numbers import exact_digits, rounded
@@ -32,6 +33,8 @@ def text(context: Context, value: Value, code: str) -> str:
         return fitting(format_value(0.0 if value is BLANK else value, code, context.date_1904))
     except InputError as error:
         raise value_error(str(error)) from None
+    except FormulaError as error:
+        raise Unsupported(str(error)) from None
 
 
 @native("VALUE", "value", context=True)
