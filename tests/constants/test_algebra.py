@@ -57,7 +57,7 @@ def test_k_follows_the_reactions_through_a_sum(chosen: list[Fraction]) -> None:
 
 
 def test_combining_needs_a_constant_for_each_reaction() -> None:
-    with pytest.raises(InputError, match="2 reactions, but 1 constants"):
+    with pytest.raises(InputError, match="reactions: 2, constants: 1;"):
         ln_k_combined([1.0], [Fraction(1), Fraction(1)])
 
 

@@ -106,7 +106,7 @@ def test_the_ammonia_table_is_met_by_a_fit_of_three_terms() -> None:
         ([300.0, 400.0], [1.0, 2.0], 2, NoAnswerError, "at least 3 points at 2 different"),
         ([300.0] * 5, [1.0] * 5, 2, NoAnswerError, "there are 5 points at 1"),
         ([300.0, 400.0, 300.0, 400.0, 300.0], [1.0] * 5, 3, NoAnswerError, "there are 5 points at 2"),
-        ([300.0, 400.0, 500.0], [1.0, 2.0], 2, InputError, "3 temperatures, but 2 constants"),
+        ([300.0, 400.0, 500.0], [1.0, 2.0], 2, InputError, "temperatures: 3, constants: 2;"),
         ([300.0, 400.0, 500.0], [1.0, 2.0, 3.0], 5, InputError, "a fit has 2, 3 or 4"),
         ([300.0, 0.0, 500.0], [1.0, 2.0, 3.0], 2, OutOfRangeError, "not above 0 K"),
         ([300.0 + 1e-6 * i for i in range(6)], [1.0] * 6, 4, NoAnswerError, "cannot be told apart"),

@@ -55,7 +55,7 @@ def ln_k_combined(ln_ks: Sequence[float], multipliers: Sequence[Fraction]) -> fl
     0.5
     """
     if len(ln_ks) != len(multipliers):
-        raise InputError(f"{len(multipliers)} reactions, but {len(ln_ks)} constants")
+        raise InputError(f"reactions: {len(multipliers)}, constants: {len(ln_ks)}; one is needed for each")
     return math.fsum(float(m) * ln_k for m, ln_k in zip(multipliers, ln_ks, strict=True) if m)
 
 

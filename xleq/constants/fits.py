@@ -132,7 +132,7 @@ def _check_data(
     if n_terms not in (2, 3, 4):
         raise InputError(f"{n_terms} terms; a fit has 2, 3 or 4: a, b/T, c ln T, d T")
     if len(t) != len(ln_k) or (u_ln_k is not None and len(u_ln_k) != len(t)):
-        raise InputError(f"{len(t)} temperatures, but {len(ln_k)} constants; one is needed for each")
+        raise InputError(f"temperatures: {len(t)}, constants: {len(ln_k)}; one is needed for each")
     if any(not (x > 0.0 and math.isfinite(x)) for x in t):
         raise OutOfRangeError("a temperature is not above 0 K")
     if u_ln_k is not None and any(not (u > 0.0 and math.isfinite(u)) for u in u_ln_k):

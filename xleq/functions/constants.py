@@ -96,7 +96,7 @@ def _amounts(block: Grid, n: int, p: float | None, basis: str) -> tuple[float, .
     moles = p is not None or kx.parse_basis(basis).kind == "Kx"
     numbers: tuple[float, ...] = READERS["amounts" if moles else "concentrations"](_listed(block, n), ())
     if len(numbers) != n:
-        raise InputError(f"{n} species, but {len(numbers)} amounts; give one amount a species")
+        raise InputError(f"species: {n}, amounts: {len(numbers)}; one is needed for each")
     return numbers
 
 
@@ -155,7 +155,7 @@ def read_fit(block: Grid) -> kx.Fit:
         return _read_fit_block(block)
     numbers: tuple[float, ...] = READERS["numbers"](_listed(block), ())
     if not 2 <= len(numbers) <= 4:
-        raise InputError(f"{len(numbers)} coefficients; a fit has 2, 3 or 4: a, b/T, c ln T, d T")
+        raise InputError(f"coefficients: {len(numbers)}; a fit has 2, 3 or 4: a, b/T, c ln T, d T")
     return kx.Fit(numbers)
 
 

@@ -103,7 +103,9 @@ def combine(reactions: Sequence[Reaction], multipliers: Sequence[Fraction]) -> s
     'CH4 + 2 H2O = 4 H2 + CO2'
     """
     if len(reactions) != len(multipliers):
-        raise InputError(f"{len(reactions)} reactions, but {len(multipliers)} multipliers")
+        raise InputError(
+            f"reactions: {len(reactions)}, multipliers: {len(multipliers)}; one is needed for each"
+        )
     net: dict[Species, Fraction] = {}
     for reaction, multiplier in zip(with_same_phases(reactions), multipliers, strict=True):
         for species, nu in zip(reaction.species, reaction.nu, strict=True):
