@@ -1,8 +1,8 @@
 """Small parts of a workbook: settings, names, tables, number formats.
 
-They are read from their XML, not through openpyxl's reader. That one refuses whole files for a wart in a
-part nobody asked about, does not know the strict namespaces and finds tables only when it loads all cells;
-and each of these parts is a dozen lines. What is openpyxl's here is the table of built-in number formats.
+They are read from their XML, not through openpyxl's reader: that one finds no sheet in a strict workbook
+and tables only while it loads all cells (5 s for 110,000), and each of these parts is a dozen lines. What
+is openpyxl's here is the table of built-in number formats; the tests hold every part against openpyxl.
 """
 
 from __future__ import annotations
