@@ -167,3 +167,62 @@ def test_a_wrong_set_of_solids_is_refused():
                 assert not certificate.ok, case.id
                 assert problem.species[i] in certificate.reason
     assert refused > 5
+
+
+def carbonates(n0, ln_k) -> Problem:
+    """CaCO3 = CaO + CO2 and MgCO3 = MgO + CO2 at 1 bar, without any other gas."""
+    rows = ((-1, 1, 0, 0, 1), (0, 0, -1, 1, 1))
+    return Problem(
+        ("CaCO3", "CaO", "MgCO3", "MgO", "CO2"),
+        ("pure", "pure", "pure", "pure", "fluid"),
+        tuple(tuple(map(Fraction, row)) for row in rows),
+        n0,
+        ln_k,
+        State("P", 1000.0, p=1.0),
+    )
+
+
+def test_two_carbonates_below_their_temperatures_stay_without_gas():
+    problem = carbonates((1.0, 0.5, 1.0, 0.5, 0.0), (-2.0, -1.0))
+    taken = (1.5, 0.0, 0.5, 1.0, 0.0)
+    assert certify(problem, taken).ok
+    assert not certify(problem, problem.n0).ok
+    assert solve(problem).n == pytest.approx(taken)
+
+
+def test_two_carbonates_above_one_temperature_make_gas():
+    problem = carbonates((1.0, 0.0, 1.0, 0.0, 0.0), (-2.0, 1.0))
+    assert certify(problem, (1.0, 0.0, 0.0, 1.0, 1.0)).ok
+    assert "a fluid would form" in certify(problem, (1.0, 0.0, 1.0, 0.0, 0.0)).reason
+
+
+def test_species_that_only_make_each_other_may_be_absent():
+    # A = B with neither fed cannot start; C = D runs beside it.
+    rows = ((-1, 1, 0, 0), (0, 0, -1, 1))
+    nu = tuple(tuple(map(Fraction, row)) for row in rows)
+    problem = Problem(("A", "B", "C", "D"), ("fluid",) * 4, nu, (0.0, 0.0, 1.0, 0.0), (1.0, 0.0), State("X"))
+    assert certify(problem, (0.0, 0.0, 0.5, 0.5)).ok
+    assert "would form" in certify(problem, (0.0, 0.0, 1.0, 0.0)).reason
+
+
+def test_a_gas_that_could_form_with_the_help_of_an_absent_solid_is_missed():
+    # The solid S forms from C, and S with C makes A: so A can form, though S is absent.
+    rows = ((0, 1, -1, 0), (1, -1, -1, 0), (0, 0, -1, 1))
+    nu = tuple(tuple(map(Fraction, row)) for row in rows)
+    problem = Problem(
+        ("A", "S", "C", "D"),
+        ("fluid", "pure", "fluid", "fluid"),
+        nu,
+        (0.0, 0.0, 1.0, 0.0),
+        (-20.0, 0.0, 0.0),
+        State("C"),
+    )
+    assert "A would form" in certify(problem, (0.0, 0.0, 0.5, 0.5)).reason
+    assert solve(problem).require().n[0] > 0.0
+
+
+def test_reactions_that_contradict_each_other_certify_nothing():
+    nu = ((Fraction(-1), Fraction(1)), (Fraction(-2), Fraction(2)))
+    problem = Problem(("A", "B"), ("fluid",) * 2, nu, (1.0, 0.0), (0.0, 1.0), State("X"))
+    assert "depends on the others" in certify(problem, (0.5, 0.5)).reason
+    assert certify(replace(problem, ln_k=(0.0, 0.0)), (0.5, 0.5)).ok

@@ -71,8 +71,11 @@ def absent_species(problem: Problem, rows: Rows, amounts: Floats, fluid: Flags) 
                 return f"{problem.species[made[highest]]} would form, yet its amount is 0"
         else:
             unsettled.append(k)
-    if unsettled and (made_first := formable(parts[unsettled])) is not None:
-        return f"{problem.species[columns[made_first]]} could form, yet its amount is 0"
+    if unsettled:
+        phases = rows.nu[absent[rows.pivots] & ~makes][:, columns]
+        first = formable(np.vstack([parts[unsettled], phases]), fluid[columns])
+        if first is not None:
+            return f"{problem.species[columns[first]]} could form, yet its amount is 0"
     return ""
 
 
@@ -121,13 +124,15 @@ def _joint_drive(parts: Floats, cost: Floats, floor: Floats, names: list[str]) -
     return ""
 
 
-def formable(parts: Floats) -> int | None:
-    """The first absent species that some combination of reactions makes without consuming an absent one.
+def formable(parts: Floats, wanted: Flags) -> int | None:
+    """The first wanted species that some combination of reactions makes without consuming an absent one.
 
     Parameters
     ----------
     parts : array [n_rows, n_absent]
-        Coefficients of the absent species in the reactions that make absent fluid species.
+        Coefficients of the absent species in the reactions that make absent ones.
+    wanted : array [n_absent] of bool
+        The species that it is asked for.
 
     Returns
     -------
@@ -138,27 +143,28 @@ def formable(parts: Floats) -> int | None:
     --------
     Neither A nor B can form where the one is made from the other:
 
-    >>> formable(np.array([[1.0, -1.0]])) is None
+    >>> both = np.array([True, True])
+    >>> formable(np.array([[1.0, -1.0]]), both) is None
     True
-    >>> formable(np.array([[1.0, 1.0]]))
+    >>> formable(np.array([[1.0, 1.0]]), both)
     0
     """
     for part in parts:
-        if (part >= 0.0).all():
-            return int(np.flatnonzero(part)[0])
+        if (part >= 0.0).all() and part[wanted].any():
+            return int(np.flatnonzero(wanted & (part > 0.0))[0])
     from scipy.optimize import linprog
 
     r, width = parts.shape
     # Unknowns: multipliers of the rows, then what is made of each absent species, at most 1 of each.
     found = linprog(
-        [0.0] * r + [-1.0] * width,
+        [0.0] * r + [-float(flag) for flag in wanted],
         A_ub=np.hstack([-parts.T, np.eye(width)]),
         b_ub=[0.0] * width,
         bounds=[(None, None)] * r + [(0.0, 1.0)] * width,
     )
     if found.status != 0 or found.x is None:
-        return 0
-    made = np.flatnonzero(found.x[r:] > 0.5)
+        return int(np.flatnonzero(wanted)[0])
+    made = np.flatnonzero(wanted & (found.x[r:] > 0.5))
     return int(made[0]) if len(made) else None
 
 
@@ -169,15 +175,17 @@ def _vanished(problem: Problem, rows: Rows, absent: Flags, fluid: Flags) -> str:
     present, sum to less than 1; or where the one reaction that makes them, in its own ratio, has no drive.
     """
     makes = (absent & fluid)[rows.pivots]
-    parts = rows.nu[makes][:, absent]
+    parts, phases = rows.nu[makes][:, absent], rows.nu[~makes][:, absent]
     residual, floor = rows.residual[makes], rows.floor[makes]
     if (np.count_nonzero(parts, axis=1) == 1).all():
         needed = float(np.exp(np.minimum(-residual, 700.0)).sum())
         if needed > 1.0 + float(floor.max()):
             return f"a fluid would form: its fractions would sum to {needed:.6g}"
         return ""
-    if len(parts) == 1 and (parts >= 0.0).all() and (rows.nu[makes][:, absent & ~fluid] == 0.0).all():
-        share = parts[0][parts[0] > 0.0]
+    apart = not (phases[:, parts[0] != 0.0] != 0.0).any()
+    if len(parts) == 1 and (parts >= 0.0).all() and apart:
+        share = rows.nu[makes][0, absent & fluid]
+        share = share[share > 0.0]
         drive = -float(residual[0]) - float(share @ np.log(share / share.sum()))
         return f"a fluid would form: ln K - ln Q = {drive:.3g}" if drive > floor[0] else ""
     return "whether a fluid would form from several coupled reactions cannot be certified"

@@ -138,10 +138,11 @@ def _judge(g: Group) -> Flags:
     present = g.n[0, g.pivots] > 0.0
     if present.any():
         ok &= _near(g, present, np.abs(residual[:, present]), floor[:, present], total)
-    makes = ~present & g.fluid[g.pivots]
     absent = g.n[0] == 0.0
-    if makes.any() and formable(g.nu[makes][:, absent]) is not None:
-        return np.zeros_like(ok)
+    if (~present & g.fluid[g.pivots]).any():
+        first = formable(g.nu[~present][:, absent], g.fluid[absent])
+        if first is not None:
+            return np.zeros_like(ok)
     phases = ~present & ~g.fluid[g.pivots]
     if phases.any():
         ok &= (residual[:, phases] >= -floor[:, phases]).all(axis=1)
