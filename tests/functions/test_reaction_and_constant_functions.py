@@ -78,6 +78,7 @@ def test_an_example_shows_its_value(function: Function, example: Example) -> Non
         ("XLEQ_K_SCALE", [True, 2.0], "#VALUE! XLEQ_K_SCALE: K: an equilibrium constant is wanted, not TRUE"),
         ("XLEQ_COEFFICIENT", ["N2 + 3 H2 = 2 NH3", "O2"], "#VALUE! XLEQ_COEFFICIENT: O2 is not in"),
         ("XLEQ_MOLAR_MASS", ["TcO2"], "#N/A XLEQ_MOLAR_MASS: Tc in TcO2 has no standard atomic weight"),
+        ("XLEQ_MOLAR_MASS", ["{naphtha}(g)"], "#N/A XLEQ_MOLAR_MASS: {naphtha} has no formula"),
         ("XLEQ_COMBINE", ["2 SO2 + O2 = 2 SO3", "1; 2"], "reactions: 1, multipliers: 2; one"),
         ("XLEQ_COMBINE", ["2 SO2 + O2 = 2 SO3", 0.123456], "not a ratio of whole numbers"),
         ("XLEQ_COMBINE", ["CO2 = CO2(g)", 1.0], "#NUM! XLEQ_COMBINE: the reactions cancel"),

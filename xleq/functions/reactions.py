@@ -9,6 +9,7 @@ from typing import Final
 
 from xleq import reactions as rx
 from xleq.cells import Value
+from xleq.errors import MissingDataError
 from xleq.functions.table import Argument, Example, Function
 
 _CONSERVATION: Final = "conservation of elements and charge, in exact rational arithmetic"
@@ -93,6 +94,8 @@ def _multipliers(target: str, reactions: Sequence[str]) -> list[Value]:
 
 def _molar_mass(formula: str) -> float:
     species = rx.parse_species(formula)
+    if species.formula is None:
+        raise MissingDataError(f"{species.name} has no formula, and so no molar mass")
     return rx.molar_mass(species.name)
 
 
@@ -203,7 +206,7 @@ FUNCTIONS: Final = (
         _molar_mass,
         (
             "#VALUE! if the formula cannot be read (with the position)",
-            "#N/A if an element has no standard atomic weight",
+            "#N/A if an element has no standard atomic weight, or a name in braces is given",
         ),
         "abridged standard atomic weights 2021: Prohaska et al., Pure Appl. Chem. 94 (2022) 573",
         (
