@@ -6,6 +6,7 @@ import math
 from collections.abc import Callable
 from dataclasses import dataclass
 
+from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.natives.finance.daycount import Calendar, checked_basis, checked_day, checked_frequency
 from xleq.recalc.natives.tools import tool
@@ -63,7 +64,7 @@ _declare_coupon("COUPDAYSNC", lambda p: p.left)
 
 def _price(place: Place, rate: float, yield_: float, redemption: float, per_year: int) -> float:
     coupon = 100.0 * rate / per_year
-    share = place.left / place.length
+    share = 1.0 - place.gone / place.length
     accrued = coupon * place.gone / place.length
     if place.count == 1:
         return (redemption + coupon) / (1.0 + share * yield_ / per_year) - accrued
@@ -192,7 +193,7 @@ def _odd_first(
         raise ValueError
     return OddFirst(
         count,
-        calendar.periods_between(bought, coupon, coupon, per_year),
+        calendar.periods_between(bought, coupon, coupon, per_year, by_days=True),
         calendar.periods_between(begin, bought, coupon, per_year),
         calendar.periods_between(begin, coupon, coupon, per_year),
     )
@@ -231,6 +232,8 @@ def _odd_last(
     bought, end, coupon = (checked_day(d, context.date_1904) for d in (settlement, maturity, last))
     if not coupon < bought < end:
         raise ValueError
+    if calendar.basis in (2, 3):
+        raise Unsupported("bonds with an odd last coupon on the bases 2 and 3")
     return (
         calendar.periods_between(coupon, end, coupon, per_year),
         calendar.periods_between(coupon, bought, coupon, per_year),

@@ -6,8 +6,8 @@ import math
 from collections.abc import Callable
 from typing import Any
 
-from xleq.cells import BLANK, DIV0, MISSING, NUM, VALUE
-from xleq.recalc.natives.gather import check_errors, direct_number, finite, guarded, numbers_of
+from xleq.cells import DIV0, MISSING, NUM, VALUE
+from xleq.recalc.natives.gather import check_errors, direct_number, guarded, numbers_of
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Array, Fail
 
@@ -17,6 +17,10 @@ from xleq.recalc.operands import Argument, Array, Fail
 def npv(rate: float, *flows: Argument) -> float:
     """Net present value, one period before the first flow."""
     return sum((flow / (1.0 + rate) ** i for i, flow in enumerate(numbers_of(flows), 1)), 0.0)
+
+
+#: Nearer to -1 no rate is found.
+_LOWEST = -0.999999
 
 
 def _root(value: Callable[[float], tuple[float, float]], guess: float) -> float:
@@ -73,7 +77,17 @@ def mirr(flows: Argument, borrowing: float, investing: float) -> float:
     return float((gains / -losses) ** (1.0 / (n - 1))) - 1.0
 
 
-def _dated(flows: Argument, dates: Argument) -> tuple[list[float], list[float]]:
+def _strict(value: Any) -> float:
+    if type(value) is not float:
+        raise Fail(NUM)
+    return value
+
+
+def _converted(value: Any) -> float:
+    return direct_number(value, logicals=False)
+
+
+def _dated(flows: Argument, dates: Argument, read: Callable[[Any], float]) -> tuple[list[float], list[float]]:
     """Amounts, and years since the first date."""
     columns: list[list[float]] = []
     for argument in (flows, dates):
@@ -81,7 +95,7 @@ def _dated(flows: Argument, dates: Argument) -> tuple[list[float], list[float]]:
         if isinstance(argument, Array):
             check_errors(argument)
             values = list(argument.flat)
-        columns.append([0.0 if v is BLANK else direct_number(v, logicals=False) for v in values])
+        columns.append([read(v) for v in values])
     amounts, days = columns[0], [float(math.trunc(d)) for d in columns[1]]
     if len(amounts) != len(days) or any(d < days[0] or d < 0.0 for d in days):
         raise Fail(NUM)
@@ -92,7 +106,7 @@ def _dated(flows: Argument, dates: Argument) -> tuple[list[float], list[float]]:
 @guarded
 def xnpv(rate: float, flows: Argument, dates: Argument) -> float:
     """Net present value of dated flows on the first date."""
-    amounts, years = _dated(flows, dates)
+    amounts, years = _dated(flows, dates, _strict)
     if rate <= 0.0:
         raise Fail(NUM)
     return math.fsum(a / (1.0 + rate) ** t for a, t in zip(amounts, years, strict=True))
@@ -102,7 +116,7 @@ def xnpv(rate: float, flows: Argument, dates: Argument) -> float:
 @guarded
 def xirr(flows: Argument, dates: Argument, guess: float = 0.1) -> float:
     """Internal rate of return of dated flows, searched from a guess."""
-    amounts, years = _dated(flows, dates)
+    amounts, years = _dated(flows, dates, _converted)
     if guess <= -1.0 or not amounts or min(amounts) >= 0.0 or max(amounts) <= 0.0:
         raise Fail(NUM)
 
@@ -114,7 +128,10 @@ def xirr(flows: Argument, dates: Argument, guess: float = 0.1) -> float:
             slope -= t * part / (1.0 + rate)
         return total, slope
 
-    return finite(_root(value, guess))
+    rate = _root(value, guess)
+    if rate < _LOWEST:
+        raise Fail(NUM)
+    return rate
 
 
 @native("FVSCHEDULE", "number list")

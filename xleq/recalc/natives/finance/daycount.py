@@ -142,8 +142,13 @@ class Calendar:
             return float(end - start)
         return (365.0 if self.basis == 3 else 360.0) / frequency
 
-    def periods_between(self, start: int, end: int, anchor: int, frequency: int) -> float:
-        """Coupon periods, whole and in part, between two dates; periods are aligned with `anchor`."""
+    def periods_between(
+        self, start: int, end: int, anchor: int, frequency: int, *, by_days: bool = False
+    ) -> float:
+        """Coupon periods, whole and in part, between two dates; periods are aligned with `anchor`.
+
+        With `by_days` the first one counts by its days even where it is whole.
+        """
         months, last = 12 // frequency, self.is_month_end(anchor)
         n = 0
         while self.shifted(anchor, n * months, last) < end:
@@ -154,7 +159,7 @@ class Calendar:
             begin = self.shifted(anchor, n * months, last)
             first, final = max(begin, start), min(to, end)
             if final > first:
-                if (first, final) == (begin, to):
+                if (first, final) == (begin, to) and not (by_days and first == start):
                     total += 1.0
                 else:
                     total += self.days(first, final) / self.period_length(begin, to, frequency)

@@ -131,44 +131,60 @@ def accrint(
     basis: float = 0.0,
     from_issue: bool = True,
 ) -> float:
-    """Accrued interest of a security that pays coupons."""
+    """Accrued interest of a security that pays coupons.
+
+    Without `from_issue` whole coupon periods before that of the first coupon are left out.
+    """
     calendar, per_year = Calendar(checked_basis(basis), context.date_1904), checked_frequency(frequency)
     begin, coupon, end = (checked_day(d, context.date_1904) for d in (issue, first, settlement))
     if rate <= 0.0 or par <= 0.0 or begin >= end:
         raise ValueError
-    if not from_issue and end > coupon:
-        begin = coupon
-    return par * rate / per_year * calendar.periods_between(begin, end, coupon, per_year)
+    months, last = 12 // per_year, calendar.is_month_end(coupon)
+    length = calendar.period_length(calendar.shifted(coupon, -months, last), coupon, per_year)
+    k = -1  # the period from which on days count; before it whole periods count as such
+    if from_issue:
+        while calendar.shifted(coupon, months * (k + 1), last) < end:
+            k += 1
+    opening = calendar.shifted(coupon, months * k, last)
+    if begin >= opening:
+        return par * rate / per_year * calendar.days(begin, end) / length
+    whole, to = 0, opening
+    while (before := calendar.shifted(coupon, months * (k - whole - 1), last)) >= begin:
+        whole, to = whole + 1, before
+    periods = calendar.days(begin, to) / calendar.period_length(before, to, per_year)
+    periods += calendar.days(opening, end) / length
+    return par * rate / per_year * (periods + whole * from_issue)
 
 
-def _bill_days(settlement: float, maturity: float) -> int:
-    start, end = math.trunc(settlement), math.trunc(maturity)
-    if start < 0 or not 0 < end - start <= 366:
+def _bill_days(context: Context, settlement: float, maturity: float) -> int:
+    """Days of a bill, which runs for a year at most."""
+    start, end = (checked_day(d, context.date_1904) for d in (settlement, maturity))
+    if not start < end <= Calendar(0, context.date_1904).shifted(start, 12, False):
         raise ValueError
     return end - start
 
 
-@tool("TBILLPRICE", "number number number")
-def tbillprice(settlement: float, maturity: float, discount: float) -> float:
+@tool("TBILLPRICE", "number number number", context=True)
+def tbillprice(context: Context, settlement: float, maturity: float, discount: float) -> float:
     """Price of a treasury bill."""
-    price = 100.0 * (1.0 - discount * _bill_days(settlement, maturity) / 360.0)
+    price = 100.0 * (1.0 - discount * _bill_days(context, settlement, maturity) / 360.0)
     if discount <= 0.0 or price < 0.0:
         raise ValueError
     return price
 
 
-@tool("TBILLYIELD", "number number number")
-def tbillyield(settlement: float, maturity: float, price: float) -> float:
+@tool("TBILLYIELD", "number number number", context=True)
+def tbillyield(context: Context, settlement: float, maturity: float, price: float) -> float:
     """Yield of a treasury bill."""
     if price <= 0.0:
         raise ValueError
-    return (100.0 - price) / price * 360.0 / _bill_days(settlement, maturity)
+    return (100.0 - price) / price * 360.0 / _bill_days(context, settlement, maturity)
 
 
-@tool("TBILLEQ", "number number number")
-def tbilleq(settlement: float, maturity: float, discount: float) -> float:
+@tool("TBILLEQ", "number number number", context=True)
+def tbilleq(context: Context, settlement: float, maturity: float, discount: float) -> float:
     """Bond-equivalent yield of a treasury bill."""
-    days = _bill_days(settlement, maturity)
+    days = _bill_days(context, settlement, maturity)
     if discount <= 0.0:
         raise ValueError
     if days <= 182:
