@@ -92,12 +92,19 @@ class Criterion:
                 for i, value in enumerate(array.flat):
                     if type(value) is type(operand) and self._plainly_met(value):
                         met.flat[i] = True
-        is_text = kinds == TEXT_KIND
-        if is_text.any() and self.text is not _never:
-            places = np.flatnonzero(is_text)
-            flat, test = array.flat, self.text
-            met.flat[places[[test(flat[i]) for i in places.tolist()]]] = True  # type: ignore[arg-type]
+        if self.text is not _never and (kinds == TEXT_KIND).any():
+            return met | self._text_mask(array)
         return met
+
+    def _text_mask(self, array: Array) -> NDArray[np.bool_]:
+        """Which texts meet the criterion; each distinct text is tested once."""
+        import numpy as np
+
+        index, codes, operand = array.index(), array.codes(), self.operand
+        if type(operand) is str and self.relation in ("=", "<>") and not any(c in operand for c in "*?~"):
+            return np.equal(codes, index.get(operand.lower(), -1))
+        test = self.text
+        return np.isin(codes, [place for key, place in index.items() if type(key) is str and test(key)])
 
     def _plainly_met(self, value: Value) -> bool:
         met = self.met_by(value)
