@@ -19,7 +19,7 @@ from xleq.recalc.context import Context
 from xleq.recalc.indirect import reference_named
 from xleq.recalc.names import Names
 from xleq.recalc.operands import Area, Array, Operand, Ref
-from xleq.recalc.parse import parse, relative_key
+from xleq.recalc.parse import parse, relative_key, row_template
 from xleq.recalc.references import Run
 from xleq.workbook import Book, Formula, FormulaKind
 
@@ -119,6 +119,8 @@ class Engine:
         self.names = Names(book, self.stores)
         self.compilers = [Compiler(i, self.stores, self.names, functions) for i in range(len(book.sheets))]
         self._programs: dict[object, Program | str] = {}
+        #: By sheet and column, the last formula met: the next one below is often the same, filled down.
+        self._above: dict[tuple[int, int], tuple[str, tuple[int, ...], Program]] = {}
         self._random = random.Random(settings.seed)
         self._deadline = time.monotonic() + settings.seconds
         self._count = 0
@@ -173,9 +175,13 @@ class Engine:
         for sheet in self.book.sheets:
             store = self.stores[sheet.index]
             values, doubtful = store.values, store.doubtful
-            for spot in store.waiting:
+            for spot, master in list(store.waiting.items()):
                 if spot not in values and spot not in doubtful:
-                    self.settle((sheet.index, *store.waiting[spot]))
+                    cell = (sheet.index, *master)
+                    try:
+                        self.compute(cell)
+                    except Blocked:
+                        self.settle(cell)
 
     def settle(self, target: Cell) -> None:
         """Make a formula's cell final, and first all that it needs.
@@ -263,6 +269,11 @@ class Engine:
         if formula.group is not None:
             key = (sheet, formula.group)
         else:
+            above = self._above.get((sheet, cell[2]))
+            if above is not None and above[2].array is array:
+                template, distances, program = above
+                if formula.text == template % tuple([cell[1] + d for d in distances]):
+                    return program
             key = (sheet, relative_key(formula.text, *formula.origin), array)
         known = self._programs.get(key)
         if known is None:
@@ -275,6 +286,8 @@ class Engine:
             self._programs[key] = known
         if isinstance(known, str):
             raise Unsupported(known)
+        if formula.group is None:
+            self._above[(sheet, cell[2])] = (*row_template(formula.text, cell[1]), known)
         return known
 
     def finish(self, cell: Cell, value: Value, bits: int, tolerance: float = TOLERANCE) -> None:

@@ -415,6 +415,31 @@ def relative_key(text: str, row: int, column: int) -> str:
     return _SHIFTED.sub(shift, text)
 
 
+def row_template(text: str, row: int) -> tuple[str, tuple[int, ...]]:
+    """Text with the rows of its relative references left open, and their distances from a row.
+
+    A formula in the same column whose text is the template filled with its own row has the same tree.
+
+    Examples
+    --------
+    >>> row_template('A2*$B$1&"50%"', 2)
+    ('A%d*$B$1&"50%%"', (0,))
+    """
+    parts: list[str] = []
+    distances: list[int] = []
+    end = 0
+    for match in _SHIFTED.finditer(text):
+        if match[1] is None:
+            continue
+        for number in _OPEN_ROW.finditer(text, match.start(), match.end()):
+            parts.append(text[end : number.start()].replace("%", "%%") + "%d")
+            distances.append(int(number[0]) - row)
+            end = number.end()
+    parts.append(text[end:].replace("%", "%%"))
+    return "".join(parts), tuple(distances)
+
+
+_OPEN_ROW = re.compile(r"(?<![$0-9])[0-9]+")
 _SHIFTED = re.compile(
     r"""
     "(?:[^"]|"")*" | '(?:[^']|'')*' | \[(?:[^\[\]']|'.|\[(?:[^\[\]']|'.)*\])*\]
