@@ -20,8 +20,8 @@ def lines() -> list[dict[str, str]]:
 HEADS = [line for line in lines() if line["src_dHf"]]
 TABLE = standard_table()
 #: Pins of the data file, to be changed only together with it.
-N_SPECIES, N_LINES = 406, 626
-SUM_DHF, SUM_S, SUM_CP = 153765.063, 56017.219, 20156.047185549403
+N_SPECIES, N_LINES = 405, 625
+SUM_DHF, SUM_S, SUM_CP = 152258.203, 55916.059, 20156.047185549403
 
 
 def test_the_table_is_unchanged():

@@ -2,7 +2,7 @@
 
 D.-Y. Peng and D. B. Robinson, Ind. Eng. Chem. Fundam. 15 (1976) 59:
 p = R T/(v − b) − a/(v² + 2 b v − b²), a = Σ Σ y_i y_j √(a_i a_j) (1 − k_ij), b = Σ y_i b_i. What follows
-from it is taken by derivation of the residual Helmholtz energy F(n, V), which gives ln φ and all its slopes at once
+from it is derived from the residual Helmholtz energy F(n, V), which gives ln φ and all its slopes at once
 (M. L. Michelsen and J. M. Mollerup, Thermodynamic Models, 2nd ed., 2007, ch. 2).
 
 Hydrogen and helium: their critical constants are used as they stand, without an effective temperature for
@@ -21,13 +21,15 @@ from numpy.typing import NDArray
 from xleq.activity.fluids import Array, Fluid, State, critical_constants
 from xleq.errors import InputError, NoAnswerError, OutOfRangeError
 from xleq.thermo import Table
-from xleq.units import P_STANDARD_BAR, R_L_BAR
+from xleq.units import R_L_BAR
 
 _ROOT2: Final = math.sqrt(2.0)
 _D1: Final = 1.0 + _ROOT2
 _D2: Final = 1.0 - _ROOT2
 _OMEGA_A: Final = 0.45724
 _OMEGA_B: Final = 0.07780
+#: Critical volume in units of b: Zc = 0.3074 over 0.0778. A fluid denser than this is no thin gas.
+_CRITICAL_COVOLUMES: Final = 3.951
 
 Root = Literal["stable", "vapour"]
 
@@ -230,9 +232,13 @@ class PengRobinson:
                 "the Peng-Robinson equation gives no positive pressure: the fluid would split"
             )
         roots = self.roots(gas / gas.sum(), state.t, p)
-        said = f"Peng-Robinson (1976), p/p° = {p / P_STANDARD_BAR:.6g}: "
+        said = f"Peng-Robinson (1976), p = {p:.6g} bar: "
         if len(roots.z) == 1:
-            return (f"{said}one root, Z = {roots.z[0]:.5g}",)
+            words = f"{said}one root, Z = {roots.z[0]:.5g}"
+            covolumes = roots.z[0] * R_L_BAR * state.t / (p * float(self.b @ gas) / float(gas.sum()))
+            if covolumes < _CRITICAL_COVOLUMES:
+                words += "; denser than the equation's critical point: liquid-like rather than a gas"
+            return (words,)
         taken = roots.vapour if self.root == "vapour" or state.kind == "V" else roots.stable
         words = f"{len(roots.z)} roots, Z = {taken:.5g} taken ({self.root})"
         if roots.stable < roots.vapour:
@@ -290,7 +296,11 @@ class _Helmholtz:
 
 
 def _cubic_roots(c2: float, c1: float, c0: float) -> tuple[float, ...]:
-    """Real roots of z³ + c2 z² + c1 z + c0 in rising order, each polished by Newton steps."""
+    """Real roots of z³ + c2 z² + c1 z + c0 in rising order.
+
+    The largest is found in closed form and polished; it is divided out by the small coefficients, which keeps
+    the small roots of a thin gas exact.
+    """
     shift = c2 / 3.0
     p = c1 - c2 * shift
     q = c0 + shift * (2.0 * shift * shift - c1)
@@ -299,22 +309,25 @@ def _cubic_roots(c2: float, c1: float, c0: float) -> tuple[float, ...]:
         root = math.sqrt(discriminant)
         large = -q / 2.0 + (root if q < 0.0 else -root)
         u = math.copysign(abs(large) ** (1.0 / 3.0), large)
-        starts = [u - p / (3.0 * u) if u else 0.0]
+        z = u - p / (3.0 * u) - shift
     elif p == 0.0:
-        starts = [0.0]
+        z = -shift
     else:
         radius = 2.0 * math.sqrt(-p / 3.0)
-        angle = math.acos(max(-1.0, min(1.0, 3.0 * q / (p * radius))))
-        starts = [radius * math.cos((angle - 2.0 * math.pi * k) / 3.0) for k in range(3)]
-    found = []
-    for start in starts:
-        z = start - shift
-        for _ in range(3):
-            slope = c1 + z * (2.0 * c2 + 3.0 * z)
-            if slope:
-                z -= (c0 + z * (c1 + z * (c2 + z))) / slope
-        found.append(z)
-    return tuple(sorted(found))
+        z = radius * math.cos(math.acos(max(-1.0, min(1.0, 3.0 * q / (p * radius)))) / 3.0) - shift
+    for _ in range(4):
+        slope = c1 + z * (2.0 * c2 + 3.0 * z)
+        if slope:
+            z -= (c0 + z * (c1 + z * (c2 + z))) / slope
+    if z == 0.0:
+        return (z,)
+    q0 = -c0 / z
+    q1 = (q0 - c1) / z
+    inside = q1 * q1 - 4.0 * q0
+    if inside < 0.0:
+        return (z,)
+    first = -0.5 * (q1 + math.copysign(math.sqrt(inside), q1))
+    return tuple(sorted((z, first, q0 / first))) if first else (z,)
 
 
 def peng_robinson(
