@@ -27,7 +27,8 @@ CORPUS = Path(__file__).resolve().parents[3] / "shared" / "corpus"
 #: Counted apart: they change with the day, or are not what an engineer's sheet uses.
 APART = {
     "volatile": r"NOW|TODAY|RAND|RANDBETWEEN|RANDARRAY|INFO|CELL",
-    "finance": r"ACCRINT|ACCRINTM|AMORDEGRC|AMORLINC|COUP\w+|CUMIPMT|CUMPRINC|DB|DDB|DISC|DOLLARDE|DOLLARFR|DURATION"
+    "finance": r"ACCRINT|ACCRINTM"
+    r"|AMORDEGRC|AMORLINC|COUP\w+|CUMIPMT|CUMPRINC|DB|DDB|DISC|DOLLARDE|DOLLARFR|DURATION"
     r"|EFFECT|FV|FVSCHEDULE|INTRATE|IPMT|IRR|ISPMT|MDURATION|MIRR|NOMINAL|NPER|NPV|ODD\w+|PDURATION|PMT|PPMT"
     r"|PRICE|PRICEDISC|PRICEMAT|PV|RATE|RECEIVED|RRI|SLN|SYD|TBILL\w+|VDB|XIRR|XNPV|YIELD|YIELDDISC|YIELDMAT",
     "database": r"DAVERAGE|DCOUNT|DCOUNTA|DGET|DMAX|DMIN|DPRODUCT|DSTDEV|DSTDEVP|DSUM|DVAR|DVARP",
@@ -101,7 +102,8 @@ def examine(book: Book) -> Tally:
                 shown = disagreed.get(address, changed.get(address, kept.get(address)))
                 array = "" if formula.kind is FormulaKind.PLAIN else "{}"
                 tally.examples.append(
-                    f"{outcome}{' ' + why if why else ''} {address} {array}={text[:100]}  stored {stored!r}  here {shown!r}"
+                    f"{outcome}{' ' + why if why else ''} {address} {array}={text[:100]}"
+                    f"  stored {stored!r}  here {shown!r}"
                 )
     return tally
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from functools import cache
 from typing import TYPE_CHECKING, Any, Final, TypeAlias
 
 from xleq.cells import BLANK, NA, CellError, Value
@@ -147,13 +148,11 @@ def _vector_power(x: Any, y: Any) -> Any:
     return np.where(np.isnan(x) | np.isnan(y) | (x == 0.0), np.nan, np.power(x, y))
 
 
+@cache
 def _vectors() -> dict[str, Vector]:
     import numpy as np
 
     return {"+": np.add, "-": np.subtract, "*": np.multiply, "/": np.divide, "^": _vector_power}
-
-
-_VECTORS: dict[str, Vector] = {}
 
 
 def apply(operator: str, a: Term, b: Term) -> Term:
@@ -172,9 +171,7 @@ def apply(operator: str, a: Term, b: Term) -> Term:
         if found is not None:
             return found
     elif operator != "&":
-        if not _VECTORS:
-            _VECTORS.update(_vectors())
-        return _arithmetic(scalar, _VECTORS[operator], a, b)
+        return _arithmetic(scalar, _vectors()[operator], a, b)
     return each(scalar, a, b)
 
 
@@ -230,10 +227,12 @@ def _arithmetic(scalar: Binary, vector: Vector, a: Term, b: Term) -> Array:
     if x is None or y is None:
         return each(scalar, a, b)
     with np.errstate(all="ignore"):
-        result = np.broadcast_to(vector(x, y), (height, width))
+        result = vector(x, y)
+        # a finite sum has finite terms; it costs less than looking at each
+        if result.shape == (height, width) and np.isfinite(result.sum()):
+            return Computed(result)
+    result = np.broadcast_to(result, (height, width))
     bad = ~np.isfinite(result)
-    if not bad.any():
-        return Computed(result)
     flat: list[Value] = result.ravel().tolist()
     left, right = stretched(a, height, width), stretched(b, height, width)
     for i in np.flatnonzero(bad).tolist():
@@ -289,24 +288,35 @@ def _compare_numbers(operator: str, a: Array, b: float | Array, numeric: NDArray
     """Numbers and blanks compare by value; texts and logicals are greater than any number."""
     import numpy as np
 
-    less, equal, greater = _HOLDS[operator]
     x = a.numbers
     if numeric is not None and not numeric.all():
         x = np.where(a.kinds == BLANK_KIND, 0.0, np.where(a.kinds == NUMBER_KIND, x, np.inf))
     y: Any = b.numbers if isinstance(b, Array) else b
-    with np.errstate(invalid="ignore"):
-        gap = x - y
-        is_equal = gap == 0.0
-        close = (np.abs(gap) <= 1e-14 * np.abs(x)) & ~is_equal & np.isfinite(x)
-    result = np.where(is_equal, equal, np.where(gap < 0.0, less, greater))
-    if close.any():
-        ys = np.broadcast_to(y, result.shape)
-        xs = np.broadcast_to(x, result.shape)
-        close = np.broadcast_to(close, result.shape)
-        for place in zip(*np.nonzero(close), strict=True):
+    result = _relations()[operator](x, y)
+    margin = 1e-14 * np.abs(y)
+    doubtful = (x >= y - margin) & (x <= y + margin)
+    doubtful &= x != y
+    if doubtful.any():
+        _, equal, _ = _HOLDS[operator]
+        xs, ys = np.broadcast_to(x, result.shape), np.broadcast_to(y, result.shape)
+        for place in zip(*np.nonzero(np.broadcast_to(doubtful, result.shape)), strict=True):
             if near(float(xs[place]), float(ys[place])):
                 result[place] = equal
-    return Computed(result.astype(np.bool_))
+    return Computed(result)
+
+
+@cache
+def _relations() -> dict[str, Vector]:
+    import numpy as np
+
+    return {
+        "=": np.equal,
+        "<>": np.not_equal,
+        "<": np.less,
+        ">": np.greater,
+        "<=": np.less_equal,
+        ">=": np.greater_equal,
+    }
 
 
 def negate(a: Term) -> Term:
