@@ -209,3 +209,35 @@ def test_cubic_roots_are_found_over_a_wide_range():
                 assert z > b
                 residual = ((z + b - 1.0) * z + (a - 3.0 * b * b - 2.0 * b)) * z + b * (b * b + b - a)
                 assert abs(residual) < 1e-11 * max(1.0, z**3)
+
+
+@pytest.mark.parametrize("root", ["vapour", "stable"])
+def test_many_states_give_what_one_gives(root):
+    names = ["C3H8(g)", "CO2(g)", "C(s)", "H2(g)"]
+    model = peng_robinson(names, [True, True, False, True], root=root)
+    random = np.random.default_rng(7)
+    y = random.dirichlet(np.ones(4), 300)
+    t, p = random.uniform(230.0, 900.0, 300), 10 ** random.uniform(-3, 2.7, 300)
+    many = model.ln_phi_many(y, t, p)
+    one = [model.ln_gamma(y[i], FluidState("P", float(t[i]), float(p[i]))) for i in range(300)]
+    np.testing.assert_allclose(many, one, rtol=1e-9, atol=1e-10)
+    with pytest.raises(OutOfRangeError):
+        model.ln_phi_many(y[:1], t[:1], np.array([-1.0]))
+
+
+@pytest.mark.slow
+def test_the_gas_model_is_fast():
+    import time
+
+    model, state = MODELS["PR"], FluidState("P", 700.0, 200.0)
+    start = time.perf_counter()
+    for _ in range(2000):
+        model.ln_gamma_slopes(MIX, state)
+    alone = (time.perf_counter() - start) / 2000
+    y = np.tile(MIX, (10000, 1))
+    start = time.perf_counter()
+    model.ln_phi_many(y, np.full(10000, 700.0), np.full(10000, 200.0))
+    batch = (time.perf_counter() - start) / 10000
+    print(f"\nPR, 4 gases: ln phi and slopes {alone * 1e6:.0f} µs; ln phi in a batch {batch * 1e6:.2f} µs")
+    assert alone < 500e-6
+    assert batch < 5e-6

@@ -95,7 +95,7 @@ NARROW = ["species", "Cp", "T_min", "T_max"]
         ([["species", "A", "T_min", "T_max"], ["NH3", -30.0, 300.0, 500.0]], "Cp is not positive"),
         ([NARROW, ["NH3", 30.0, 300.0, 500.0], ["NH3", 31.0, 600.0, 700.0]], "at 600"),
         ([["species", "dHf"], ["NH3", -45.0], ["NH3", -46.0]], "NH3\\(g\\) has dhf in row 2"),
-        ([["species", "kij CO2", "kij H2O"], ["H2O", 0.1, BLANK], ["CO2", BLANK, 0.2]], "given twice, differently"),
+        ([["species", "kij CO2", "kij H2O"], ["H2O", 0.1, BLANK], ["CO2", BLANK, 0.2]], "twice, differently"),
         ([["species", "kij X?"], ["H2O", 0.1]], "header 'kij X\\?'"),
         ([["species", BLANK], ["H2O", 0.1]], "column without a header"),
     ],
@@ -111,3 +111,10 @@ def test_a_unit_that_is_not_understood_is_named_with_its_header(header):
         UnitError, match="header '" + header.replace("[", r"\[").replace("(", r"\(").replace(")", r"\)")
     ):
         read_data([["species", header], ["NH3", 1.0]])
+
+
+def test_a_truth_value_is_not_taken_for_the_number_it_equals():
+    assert read_data([["species", "dHf"], ["NH3", 1.0]]).find("NH3").dhf == 1.0
+    with pytest.raises(InputError, match="True is not a number"):
+        read_data([["species", "dHf"], ["NH3", True]])
+    assert read_data([["species", "dHf"], ["NH3", 1.0]]) is read_data([["species", "dHf"], ["NH3", 1.0]])

@@ -18,6 +18,7 @@ from typing import Final, Literal, NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from xleq.activity.cubic import cubic_extremes, cubic_roots
 from xleq.activity.fluids import Array, Fluid, State, critical_constants
 from xleq.errors import InputError, NoAnswerError, OutOfRangeError
 from xleq.thermo import Table
@@ -131,7 +132,7 @@ class PengRobinson:
         rt = R_L_BAR * t
         a, b = float(y @ self.attraction(t) @ y), float(y @ self.b)
         big_a, big_b = a * p / rt**2, b * p / rt
-        z = _cubic_roots(
+        z = cubic_roots(
             big_b - 1.0, big_a - 3.0 * big_b**2 - 2.0 * big_b, big_b * (big_b * (1.0 + big_b) - big_a)
         )
         found = tuple(x for x in z if x > big_b)
@@ -207,6 +208,46 @@ class PengRobinson:
             matrix[np.ix_(self.inside, self.inside)] = second
         return values, matrix
 
+    def ln_phi_many(self, y: Array, t: Array, p: Array) -> Array:
+        """Ln φ of many mixtures at once, each at its own T and p.
+
+        Parameters
+        ----------
+        y : array [n_states, n_species]
+            Amounts or mole fractions; those of species outside the gas are not used.
+        t, p : array [n_states]
+            Temperature [K], pressure [bar].
+
+        Returns
+        -------
+        array [n_states, n_species]
+
+        Raises
+        ------
+        OutOfRangeError
+            If a temperature or pressure is not positive.
+        """
+        if not (np.all(t > 0.0) and np.all(p > 0.0)):
+            raise OutOfRangeError("a gas needs a positive temperature and pressure")
+        gas = y[:, self.inside]
+        gas = gas / gas.sum(axis=1, keepdims=True)
+        base = np.maximum(1.0 + self.m * (1.0 - np.sqrt(t[:, None] / self.tc)), 0.0) * np.sqrt(self.ac)
+        s = base * ((gas * base) @ self.one_minus_kij)
+        a, b, rt = np.sum(gas * s, axis=1), gas @ self.b, R_L_BAR * t
+        big_a, big_b = a * p / rt**2, b * p / rt
+        z, low = cubic_extremes(
+            big_b - 1.0, big_a - 3.0 * big_b**2 - 2.0 * big_b, big_b * (big_b * (1.0 + big_b) - big_a)
+        )
+        if self.root == "stable":
+            low = np.where(low > big_b, low, z)
+            z = np.where(_gibbs(low, big_a, big_b) < _gibbs(z, big_a, big_b), low, z)
+        ratio = np.log1p(2.0 * _ROOT2 * big_b / (z + _D2 * big_b)) / (2.0 * _ROOT2 * big_b) * big_a
+        share = self.b / b[:, None]
+        result = np.zeros(y.shape)
+        ln_phi = share * (z - 1.0)[:, None] - np.log(z - big_b)[:, None]
+        result[:, self.inside] = ln_phi - ratio[:, None] * (2.0 * s / a[:, None] - share)
+        return result
+
     def pressure(self, n: Array, state: State) -> float:
         """Pressure of the gas at T and V, or that of the state [bar]."""
         gas = n[self.inside]
@@ -244,6 +285,13 @@ class PengRobinson:
         if roots.stable < roots.vapour:
             words += "; the liquid-like root has the lower Gibbs energy: such a gas would condense"
         return (said + words,)
+
+
+def _gibbs(z: Array, big_a: Array, big_b: Array) -> Array:
+    """Σ y ln φ of mixtures at roots z."""
+    attraction = big_a / (2.0 * _ROOT2 * big_b) * np.log1p(2.0 * _ROOT2 * big_b / (z + _D2 * big_b))
+    result: Array = z - 1.0 - np.log(z - big_b) - attraction
+    return result
 
 
 class _Helmholtz:
@@ -293,41 +341,6 @@ class _Helmholtz:
         dp_dn = repulsion - 2.0 * self.s / self.q + self.d * self.q_b * self.b / self.q**2
         dp_dv = -self.total * self.rt / self.free**2 + self.d * 2.0 * (self.v + self.big_b) / self.q**2
         return dp_dn, dp_dv
-
-
-def _cubic_roots(c2: float, c1: float, c0: float) -> tuple[float, ...]:
-    """Real roots of z³ + c2 z² + c1 z + c0 in rising order.
-
-    The largest is found in closed form and polished; it is divided out by the small coefficients, which keeps
-    the small roots of a thin gas exact.
-    """
-    shift = c2 / 3.0
-    p = c1 - c2 * shift
-    q = c0 + shift * (2.0 * shift * shift - c1)
-    discriminant = q * q / 4.0 + p**3 / 27.0
-    if discriminant > 0.0:
-        root = math.sqrt(discriminant)
-        large = -q / 2.0 + (root if q < 0.0 else -root)
-        u = math.copysign(abs(large) ** (1.0 / 3.0), large)
-        z = u - p / (3.0 * u) - shift
-    elif p == 0.0:
-        z = -shift
-    else:
-        radius = 2.0 * math.sqrt(-p / 3.0)
-        z = radius * math.cos(math.acos(max(-1.0, min(1.0, 3.0 * q / (p * radius)))) / 3.0) - shift
-    for _ in range(4):
-        slope = c1 + z * (2.0 * c2 + 3.0 * z)
-        if slope:
-            z -= (c0 + z * (c1 + z * (c2 + z))) / slope
-    if z == 0.0:
-        return (z,)
-    q0 = -c0 / z
-    q1 = (q0 - c1) / z
-    inside = q1 * q1 - 4.0 * q0
-    if inside < 0.0:
-        return (z,)
-    first = -0.5 * (q1 + math.copysign(math.sqrt(inside), q1))
-    return tuple(sorted((z, first, q0 / first))) if first else (z,)
 
 
 def peng_robinson(

@@ -114,11 +114,14 @@ def read_data(
     -107.11
     """
     frozen = tuple(tuple(row) for row in block)
-    return _read(frozen, default_phase, table or standard_table())
+    kinds = tuple(
+        tuple(type(cell) for cell in row) for row in frozen
+    )  # 1.0 and TRUE are equal, but not the same
+    return _read(frozen, kinds, default_phase, table or standard_table())
 
 
 @lru_cache(maxsize=64)
-def _read(block: Block, default_phase: Phase, table: Table) -> Table:
+def _read(block: Block, kinds: tuple[tuple[type, ...], ...], default_phase: Phase, table: Table) -> Table:
     if not block:
         raise InputError("the data range is empty; its first row must be a header with the word species")
     columns = _columns(block[0], default_phase)
