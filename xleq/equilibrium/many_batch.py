@@ -118,8 +118,8 @@ def _part(batch: Batch, keep: Flags) -> Batch:
 
 def _sound(batch: Batch) -> Flags:
     """Instances whose numbers mean something; the others are refused one by one, with the reason."""
-    ok = np.isfinite(batch.n0).all(axis=1) & (batch.n0 >= 0.0).all(axis=1) & (batch.n0 > 0.0).any(axis=1)
-    ok &= np.isfinite(batch.ln_k).all(axis=1)
+    amounts = np.asarray((np.isfinite(batch.n0) & (batch.n0 >= 0.0)).all(axis=1))
+    ok: Flags = np.asarray(amounts & (batch.n0 > 0.0).any(axis=1) & np.isfinite(batch.ln_k).all(axis=1))
     for kinds, values in (("PV", batch.t), ("P", batch.p), ("VC", batch.v)):
         if batch.kind in kinds:
             ok &= np.isfinite(values) & (values > 0.0)

@@ -78,7 +78,7 @@ def _agree(model: Nonideality, state: State, system: System, pure: NDArray[np.in
             return replace(o, steps=steps)
         best = min(best, size)
         moved = Response(o.system, o.path).by_ln_gamma()[np.ix_(fluid, fluid)]
-        slope = part * _slope(model, state, n, fluid) @ moved - np.eye(len(fluid))
+        slope = part * ln_gamma_slope(model, state, n, fluid) @ moved - np.eye(len(fluid))
         try:
             change = np.linalg.solve(slope, -gap)
         except np.linalg.LinAlgError:
@@ -98,8 +98,8 @@ def _composition(o: Outcome, fluid: NDArray[np.intp]) -> Floats:
     return n
 
 
-def _slope(model: Nonideality, state: State, n: Floats, fluid: NDArray[np.intp]) -> Floats:
-    """D ln gamma / d ln n of the fluid species, by central differences."""
+def ln_gamma_slope(model: Nonideality, state: State, n: Floats, fluid: NDArray[np.intp]) -> Floats:
+    """D ln gamma / d ln n of the fluid species [n_fluid, n_fluid], by central differences."""
     out = np.zeros((len(fluid), len(fluid)))
     for column, i in enumerate(fluid):
         up, down = n.copy(), n.copy()
