@@ -24,7 +24,8 @@ LN_K = 0.02
 N_COVERED = 378
 
 with SPECIES_CSV.open(encoding="utf-8", newline="") as _file:
-    HEADS = [line for line in csv.DictReader(_file) if line["src_dHf"]]
+    _lines = csv.DictReader(line for line in _file if not line.startswith("#"))
+    HEADS = [line for line in _lines if line["src_dHf"]]
 with (HERE / "outside_disagreements.tsv").open(encoding="utf-8") as _file:
     KNOWN = {(r["species"], r["what"]): r["reason"] for r in csv.DictReader(_file, delimiter="\t")}
 

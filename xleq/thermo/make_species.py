@@ -52,6 +52,15 @@ T_END: Final = {
 #: Melting point below which the table of an element is that of its solid. [K]  NIST-JANAF.
 T_START: Final = {"Br2(l)": 265.9, "Hg(l)": 234.29}
 
+HEADER: Final = (
+    "# Species x phases, one line for each interval of Cp; made by make_species.py, not to be edited.",
+    "# dHf [kJ/mol] and S [J/(mol K)] at 298.15 K and 1 bar (solutes: 1 mol/kg); T_min, T_max [K];",
+    "# Cp = A + B x + C x^2 + D x^3 + E/x^2 [J/(mol K)] with x = T/1000 K; dH_tr [kJ/mol] on entering;",
+    "# fit: worst relative deviation from the source; Tc [K], Pc [bar], omega; src_*: see sources.csv;",
+    "# janaf: NIST-JANAF table to compare with, or the source of single values.",
+    "# Numbers are facts; no table of another collection is reproduced.",
+)
+
 Rows = dict[str, dict[str, str]]
 
 
@@ -352,6 +361,7 @@ def main() -> None:
     """Write ``species.csv`` beside this file."""
     tables = read_tables()
     with (HERE / "species.csv").open("w", encoding="utf-8", newline="") as file:
+        file.write("\n".join(HEADER) + "\n")
         writer = csv.DictWriter(file, COLUMNS, lineterminator="\n", restval="")
         writer.writeheader()
         writer.writerows(substances(tables))

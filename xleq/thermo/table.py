@@ -136,7 +136,8 @@ def standard_table() -> Table:
     """
     path = resources.files("xleq.thermo") / "species.csv"
     groups: dict[str, list[dict[str, str]]] = {}
-    for row in csv.DictReader(path.read_text("utf-8").splitlines()):
+    lines = (line for line in path.read_text("utf-8").splitlines() if not line.startswith("#"))
+    for row in csv.DictReader(lines):
         groups.setdefault(row["species"], []).append(row)
     data: dict[str, SpeciesData] = {}
     also: dict[str, str] = {}
