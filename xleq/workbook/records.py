@@ -16,7 +16,7 @@ from enum import Enum
 from pathlib import Path
 from typing import NamedTuple, TypeAlias
 
-from xleq.cells import BLANK, Value
+from xleq.cells import BLANK, Value, parse_address
 
 #: Row and column of a cell, from 1.
 Place: TypeAlias = tuple[int, int]
@@ -49,6 +49,25 @@ class Area(NamedTuple):
     def n_cells(self) -> int:
         """Number of cells."""
         return (self.bottom - self.top + 1) * (self.right - self.left + 1)
+
+
+def parse_area(text: str) -> Area:
+    """An area from its A1 text; one cell is an area too.
+
+    Raises
+    ------
+    ParseError
+        If it is neither.
+
+    Examples
+    --------
+    >>> parse_area("B2:D5")
+    Area(top=2, left=2, bottom=5, right=4)
+    """
+    first, _, last = text.partition(":")
+    top, left = parse_address(first)
+    bottom, right = parse_address(last) if last else (top, left)
+    return Area(min(top, bottom), min(left, right), max(top, bottom), max(left, right))
 
 
 class FormulaKind(Enum):

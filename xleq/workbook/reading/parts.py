@@ -13,8 +13,7 @@ from typing import NamedTuple, overload
 from xleq.errors import DamagedBookError, ParseError
 from xleq.workbook.markup import Node, unescaped
 from xleq.workbook.package import Package
-from xleq.workbook.reading.sheets import parse_area
-from xleq.workbook.records import Calculation, DefinedName, SheetKind, SheetState, Table
+from xleq.workbook.records import Calculation, DefinedName, SheetKind, SheetState, Table, parse_area
 
 #: Built-in formats of East Asian dates (ECMA-376 part 1, 18.8.30); openpyxl leaves them out.
 _EAST_ASIAN_DATES = frozenset((*range(27, 37), *range(50, 59)))

@@ -6,10 +6,8 @@ against about half a second here), drops the dynamic-array mark and loses shared
 
 from __future__ import annotations
 
-import gc
 import math
 from collections.abc import Callable, Container
-from datetime import date, datetime, time
 from typing import Final, Protocol
 
 from xleq.cells import (
@@ -24,12 +22,14 @@ from xleq.cells import (
     parse_address,
 )
 from xleq.errors import DamagedBookError, LimitError, ParseError
+from xleq.workbook.collecting import collection_paused
 from xleq.workbook.limits import Limits
 from xleq.workbook.markup import bare, feed, is_true, new_parser, unescaped
+from xleq.workbook.reading.dates import serial_of
 from xleq.workbook.reading.metadata import Metadata
-from xleq.workbook.records import Area, DataTable, Formula, FormulaKind, Place, Sheet
+from xleq.workbook.reading.quick import NotUsualError, read_quickly
+from xleq.workbook.records import Area, DataTable, Formula, FormulaKind, Place, Sheet, parse_area
 
-_DAY: Final = 86400.0
 _NO_ATTRIBUTES: Final[dict[str, str]] = {}
 
 
@@ -44,50 +44,7 @@ class Shared(Protocol):
     n_cells: int
 
 
-def parse_area(text: str) -> Area:
-    """An area from its A1 text; one cell is an area too.
-
-    Raises
-    ------
-    ParseError
-        If it is neither.
-
-    Examples
-    --------
-    >>> parse_area("B2:D5")
-    Area(top=2, left=2, bottom=5, right=4)
-    """
-    first, _, last = text.partition(":")
-    top, left = parse_address(first)
-    bottom, right = parse_address(last) if last else (top, left)
-    return Area(min(top, bottom), min(left, right), max(top, bottom), max(left, right))
-
-
-def serial_of(text: str, date_1904: bool) -> float:
-    """Serial number of an ISO 8601 date, time or both.
-
-    Raises
-    ------
-    ValueError
-        If it is none of them.
-
-    Examples
-    --------
-    >>> serial_of("2024-01-10T12:00:00", False), serial_of("1904-01-02", True), serial_of("06:00:00", False)
-    (45301.5, 1.0, 0.25)
-    """
-    if "-" not in text:
-        clock = time.fromisoformat(text)
-        return (clock.hour * 3600 + clock.minute * 60 + clock.second + clock.microsecond / 1e6) / _DAY
-    moment = datetime.fromisoformat(text).replace(tzinfo=None)
-    start = datetime(1904, 1, 1) if date_1904 else datetime(1899, 12, 30)
-    passed = moment - start
-    serial = passed.days + (passed.seconds + passed.microseconds / 1e6) / _DAY
-    # The 1900 count has a 29 February 1900 that never was.
-    return serial - 1 if not date_1904 and moment.date() < date(1900, 3, 1) else serial
-
-
-class _Reader:
+class SheetReader:
     """Handlers of the streaming parser; one instance reads one sheet."""
 
     def __init__(self, sheet: Sheet, shared: Shared) -> None:
@@ -97,7 +54,7 @@ class _Reader:
         self.hidden_columns: list[tuple[int, int]] = []
         self.filter_area: Area | None = None
         self._depth_left = shared.limits.xml_depth
-        self._cells_left = shared.limits.cells - shared.n_cells
+        self.cells_left = shared.limits.cells - shared.n_cells
         self._columns: dict[str, int] = {}
         self._masters: dict[str, Formula] = {}
         self._orphans: list[tuple[Place, str]] = []
@@ -114,7 +71,7 @@ class _Reader:
         self._extension = 0
         self._pending_filter: Area | None = None
         self._starts: dict[str, Callable[[dict[str, str]], None]] = {
-            "row": self._start_row,
+            "row": self.start_row,
             "c": self._start_cell,
             "f": self._start_formula,
             "rPh": self._start_phonetic,
@@ -129,6 +86,7 @@ class _Reader:
     # What the parser calls
 
     def start(self, name: str, attributes: dict[str, str]) -> None:
+        """An element begins."""
         self._depth_left -= 1
         if self._depth_left < 0:
             raise LimitError("has too many elements inside one another (xml_depth)")
@@ -138,9 +96,11 @@ class _Reader:
             handler(attributes)
 
     def characters(self, text: str) -> None:
+        """Text, or a piece of it."""
         self._text += text
 
     def end(self, name: str) -> None:
+        """An element ends."""
         self._depth_left += 1
         local = bare(name)
         if self._extension:  # whatever it holds is nothing of the cell's
@@ -159,7 +119,8 @@ class _Reader:
 
     # Rows, columns, filters
 
-    def _start_row(self, attributes: dict[str, str]) -> None:
+    def start_row(self, attributes: dict[str, str]) -> None:
+        """A row begins."""
         text = attributes.get("r")
         if text is None:
             self._row += 1
@@ -191,8 +152,8 @@ class _Reader:
     # Cells
 
     def _start_cell(self, attributes: dict[str, str]) -> None:
-        self._cells_left -= 1
-        if self._cells_left < 0:
+        self.cells_left -= 1
+        if self.cells_left < 0:
             raise LimitError(f"brings the book over {self.shared.limits.cells} cells (cells)")
         text = attributes.get("r")
         if text is None:
@@ -223,6 +184,26 @@ class _Reader:
             if letters.isalpha():
                 self._columns[letters] = column_number(letters)
         self._row, self._column, self._row_text = row, column, str(row)
+
+    def take_cell(
+        self,
+        place: Place,
+        kind: str,
+        mark: str | None,
+        rich: str | None,
+        formula_attributes: dict[str, str] | None,
+        formula: str,
+        value: str | None,
+        inline: str | None,
+    ) -> None:
+        """A cell that was taken apart elsewhere; `formula_attributes` is None where it has no formula."""
+        self._row, self._column = place
+        self._type, self._value, self._rich = kind, value, rich or ""
+        self._dynamic = mark is not None and int(mark) in self.shared.metadata.dynamic
+        self._formula = None if formula_attributes is None else formula
+        self._formula_attributes = formula_attributes or _NO_ATTRIBUTES
+        self._inline = [] if inline is None else [inline]
+        self._end_cell()
 
     def _start_formula(self, attributes: dict[str, str]) -> None:
         self._formula_attributes = attributes
@@ -262,7 +243,7 @@ class _Reader:
     def _decoded(self, text: str, kind: str) -> Value:
         if kind == "n":
             number = float(text)
-            if not math.isfinite(number) or "_" in text:
+            if not math.isfinite(number) or "_" in text or not text.isascii():
                 raise ValueError(text)
             return number
         if kind == "s":
@@ -372,20 +353,11 @@ def read_cells(sheet: Sheet, data: bytes, shared: Shared) -> None:
     DamagedBookError, LimitError
         If the part is not well-formed, a cell cannot be read, or a limit is exceeded.
     """
-    reader = _Reader(sheet, shared)
-    parser = new_parser()
-    parser.StartElementHandler = reader.start
-    parser.EndElementHandler = reader.end
-    parser.CharacterDataHandler = reader.characters
-    collecting = gc.isenabled()
-    gc.disable()  # hundreds of thousands of new tuples, none of them garbage
-    try:
-        feed(parser, f"sheet {sheet.name!r}", data)
-    finally:
-        if collecting:
-            gc.enable()
+    part = f"sheet {sheet.name!r}"
+    with collection_paused():
+        reader = _read(sheet, data, shared, part)
     reader.adopt_orphans()
-    shared.n_cells = shared.limits.cells - reader._cells_left
+    shared.n_cells = shared.limits.cells - reader.cells_left
     sheet.hidden_rows = frozenset(reader.hidden_rows)
     sheet.hidden_columns = tuple(reader.hidden_columns)
     area = reader.filter_area
@@ -396,3 +368,24 @@ def read_cells(sheet: Sheet, data: bytes, shared: Shared) -> None:
         rows = [row for row, _ in places]
         columns = [column for _, column in places]
         sheet.used = Area(min(rows), min(columns), max(rows), max(columns))
+
+
+def _read(sheet: Sheet, data: bytes, shared: Shared, part: str) -> SheetReader:
+    """Read by tokens if the sheet is usual, else by the parser alone."""
+    reader = SheetReader(sheet, shared)
+    try:
+        _parse(reader, part, read_quickly(reader, data))
+    except (NotUsualError, DamagedBookError, LimitError):  # the parser reads it, or says what is wrong
+        for cells in (sheet.stored, sheet.formulas, sheet.styles):
+            cells.clear()
+        reader = SheetReader(sheet, shared)
+        _parse(reader, part, data)
+    return reader
+
+
+def _parse(reader: SheetReader, part: str, data: bytes) -> None:
+    parser = new_parser()
+    parser.StartElementHandler = reader.start
+    parser.EndElementHandler = reader.end
+    parser.CharacterDataHandler = reader.characters
+    feed(parser, part, data)

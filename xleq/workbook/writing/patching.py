@@ -11,8 +11,7 @@ from xml.parsers import expat
 
 from xleq.cells import BLANK, address_text
 from xleq.errors import DamagedBookError, ParseError
-from xleq.workbook.reading.sheets import parse_area
-from xleq.workbook.records import Area, Place
+from xleq.workbook.records import Area, Place, parse_area
 from xleq.workbook.writing.edits import Edit, Role
 from xleq.workbook.writing.scanning import START_TAG, Layout, Row, scan
 from xleq.workbook.writing.values import constant_markup_of, markup_of

@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import IO, Final
 
 from xleq.errors import BookError, DamagedBookError, LockedBookError, SignedBookError
+from xleq.workbook.collecting import collection_paused
 from xleq.workbook.limits import Limits
 from xleq.workbook.markup import bare, feed, new_parser
 from xleq.workbook.package import Package, about
@@ -110,7 +111,7 @@ def write_book(
             raise SignedBookError("is digitally signed, and a change would break the signature")
         package = Package(source, limits or Limits())
     with package:
-        with about(source):
+        with about(source), collection_paused():
             _refuse_changed(package.stamp, book)
             changed, n_cells = _changes(book, results, package, recalculate_on_load)
         if in_place and not changed:

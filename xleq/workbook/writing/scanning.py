@@ -10,6 +10,7 @@ from typing import Final
 from xleq.cells import column_number, parse_address
 from xleq.errors import DamagedBookError, ParseError
 from xleq.workbook.markup import bare, feed, new_parser
+from xleq.workbook.tokens import ATTRIBUTE, TOKEN_BYTES, usual_region
 
 #: A start tag; quoted values may hold anything.
 START_TAG: Final = re.compile(rb"""<[^<>"']*(?:"[^"]*"[^<>"']*|'[^']*'[^<>"']*)*>""")
@@ -187,11 +188,18 @@ def scan(data: bytes, wanted_rows: Collection[int], part: str) -> Layout:
     DamagedBookError
         If the sheet has no `sheetData`, or its cells stand where they cannot be written.
     """
+    found = _scan_quickly(data, wanted_rows, part)
+    if found is not None:
+        return found
     scanner = _Scanner(data, wanted_rows)
     feed(scanner.parser, part, data)
+    return _layout(scanner, part)
+
+
+def _layout(scanner: _Scanner, part: str) -> Layout:
     if scanner.data is None:
         raise DamagedBookError(f"{part} has no cell data")
-    tag = data[scanner.data.start + 1 : scanner.data.tag_end]
+    tag = scanner.bytes[scanner.data.start + 1 : scanner.data.tag_end]
     prefix = tag[: tag.index(b"sheetData")]
     return Layout(
         prefix,
@@ -201,3 +209,48 @@ def scan(data: bytes, wanted_rows: Collection[int], part: str) -> Layout:
         scanner.dimension_ref,
         scanner.column_styles,
     )
+
+
+def _scan_quickly(data: bytes, wanted_rows: Collection[int], part: str) -> Layout | None:
+    """As `scan`, by tokens; None when the sheet is not written in the usual way."""
+    region = usual_region(data)
+    if region is None:
+        return None
+    start, end = region
+    rows = _usual_rows(data, start, end, wanted_rows)
+    if rows is None:
+        return None
+    scanner = _Scanner(data[:start] + data[end:], ())
+    feed(scanner.parser, part, scanner.bytes)
+    layout = _layout(scanner, part)
+    layout.rows = rows
+    layout.data.end += end - start
+    return layout
+
+
+def _usual_rows(data: bytes, start: int, end: int, wanted_rows: Collection[int]) -> list[Row] | None:
+    rows: list[Row] = []
+    columns: dict[bytes, int] = {}
+    at, number, inside, wanted = start, b"", False, False
+    for token in TOKEN_BYTES.finditer(data, start, end):
+        if token.start() != at:
+            return None
+        at = token.end()
+        letters = token[1]
+        if letters is not None:
+            if not inside or token[2] != number:
+                return None
+            if wanted:
+                column = columns.get(letters) or columns.setdefault(letters, column_number(letters.decode()))
+                rows[-1].cells.append((column, token.start(1) - len('<c r="'), at))
+        elif token[11] is not None:
+            attributes = dict(ATTRIBUTE.findall(token[11].decode()))
+            number = attributes.get("r", "").encode()
+            if inside or not number.isdigit():
+                return None
+            rows.append(Row(token.start(11) - len("<row"), at, at, int(number), attributes))
+            inside, wanted = not token[12], rows[-1].number in wanted_rows
+        else:
+            inside = False
+            rows[-1].end = at
+    return None if inside or data[at:end].strip() else rows

@@ -32,8 +32,10 @@ def number_text(number: float) -> str:
     """
     if not math.isfinite(number):
         raise InputError(f"{number} is no value of a cell")
-    text = repr(float(number)).removesuffix(".0").replace("e", "E")
-    return "0" if text == "-0" else text
+    text = repr(number)
+    if text.endswith(".0"):
+        return "0" if number == 0.0 else text[:-2]
+    return text.replace("e", "E")
 
 
 def same_value(stored: Value, fresh: Value) -> bool:
