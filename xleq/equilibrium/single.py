@@ -11,7 +11,6 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
-from fractions import Fraction
 from math import exp, log
 from typing import TYPE_CHECKING
 
@@ -21,6 +20,7 @@ from xleq.errors import InputError
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
+    from fractions import Fraction
 
 #: Steps after which Newton's method is given up; bisection alone would need fewer than this.
 MAX_STEPS = 200
@@ -231,18 +231,31 @@ def _exact_first(problem: Problem, nu: Sequence[float], used: list[int], width: 
     if len(near) < 2:
         return first
     row = problem.nu[0]
-    return min(near, key=lambda i: Fraction(problem.n0[i]) / abs(row[i]))
+    first = near[0]
+    for i in near[1:]:
+        up, down = _ratio(problem.n0[i], row[i])
+        least_up, least_down = _ratio(problem.n0[first], row[first])
+        if up * least_down < least_up * down:
+            first = i
+    return first
+
+
+def _ratio(amount: float, c: Fraction) -> tuple[int, int]:
+    """Amount / |c| as numerator and denominator, in plain integers, which are faster than fractions."""
+    up, down = amount.as_integer_ratio()
+    return up * c.denominator, down * abs(c.numerator)
 
 
 def _exact_amount(problem: Problem, i: int, first: int) -> float:
     """What is left of species i when species `first` is used up, rounded once."""
     if problem.n0[i] == 0.0:
         return 0.0
-    ratio = problem.nu[0][i] / problem.nu[0][first]
-    up, down = ratio.numerator, ratio.denominator
-    a, b = problem.n0[i].as_integer_ratio()
-    c, d = problem.n0[first].as_integer_ratio()
-    return (a * d * down - c * b * up) / (b * d * down)
+    row = problem.nu[0]
+    up, down = _ratio(problem.n0[i], row[i])
+    least_up, least_down = _ratio(problem.n0[first], row[first])
+    size = abs(row[i])
+    left = (up * least_down - least_up * down) * size.numerator
+    return left / (down * least_down * size.denominator)
 
 
 def _varies(fluid: Fluid, back: End, ahead: End) -> bool:
