@@ -14,7 +14,8 @@ from typing import TYPE_CHECKING, Final
 import numpy as np
 
 from xleq.cells import BLANK, MAX_COLUMN, MAX_ROW, Value
-from xleq.recalc.operands import _KIND_OF, BLANK_KIND, NUMBER_KIND, Area, Array
+from xleq.recalc.lexicon import Lexicon
+from xleq.recalc.operands import _KIND_OF, BLANK_KIND, Area, Array
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -57,7 +58,7 @@ class Unsupported(Exception):  # noqa: N818 - no error of the program: the cell 
 class Column:
     """One column of a sheet from row 1 to its last used row, kept up to date as cells become final."""
 
-    __slots__ = ("changes", "kinds", "numbers", "trust", "values")
+    __slots__ = ("_words", "changes", "kinds", "lexicon", "numbers", "trust", "values")
 
     def __init__(self, values: list[Value | None], trust: dict[int, int]) -> None:
         self.values = values
@@ -68,8 +69,17 @@ class Column:
         self.numbers = np.array([v if type(v) is float else _NAN for v in values], np.float64)
         self.trust: NDArray[np.uint8] | None = None
         self.changes = 0
+        self.lexicon = Lexicon()
+        self._words: NDArray[np.int32] | None = None
         for row, bits in trust.items():
             self.hold(row, bits)
+
+    def words(self) -> NDArray[np.int32]:
+        """Number of each text in the lexicon; -1 for what is no text."""
+        if self._words is None:
+            add = self.lexicon.add
+            self._words = np.array([add(v) if type(v) is str else -1 for v in self.values], np.int32)
+        return self._words
 
     def put(self, row: int, value: Value) -> None:
         """Make a cell final, or change it."""
@@ -79,6 +89,8 @@ class Column:
         self.values[at] = value
         self.kinds[at] = _KIND_OF.get(type(value), BLANK_KIND)
         self.numbers[at] = value if type(value) is float else _NAN
+        if self._words is not None:
+            self._words[at] = self.lexicon.add(value) if type(value) is str else -1
 
     def hold(self, row: int, bits: int) -> None:
         """Note what is held against a cell."""
@@ -114,6 +126,9 @@ class View(Array):
         self._index = None
         self._runs = None
         self._codes = None
+        self._span = None
+        self._words = None
+        self._words = None
         self.stamp = sum(c.changes for c in columns)
 
     def _unpack(self) -> Sequence[Value]:
@@ -135,12 +150,12 @@ class View(Array):
             self._numbers = np.pad(self._numbers, below, constant_values=_NAN)
             self._kinds = np.pad(self._kinds, below, constant_values=BLANK_KIND)
 
-    def coerced(self) -> NDArray[np.float64]:
-        """float64 [height, width]: logicals as 1 and 0, blanks as 0; nan for texts and errors."""
-        kinds = self.kinds
-        if (kinds <= NUMBER_KIND).all():
-            return self.numbers if kinds.all() else np.where(kinds == BLANK_KIND, 0.0, self.numbers)
-        return super().coerced()
+    def words(self) -> tuple[NDArray[np.int32], Lexicon]:
+        """Number of each text in a lexicon, as int32 [height, width], -1 for what is no text; the lexicon."""
+        if len(self._columns) > 1 or self._tail:
+            return super().words()
+        column = self._columns[0]
+        return column.words()[self._first : self._last].reshape(-1, 1), column.lexicon
 
 
 class Cells:

@@ -6,6 +6,7 @@ from collections.abc import Callable, Iterable, Sequence
 from typing import TYPE_CHECKING, Final, NamedTuple, TypeAlias
 
 from xleq.cells import BLANK, CellError, Grid, Missing, Value
+from xleq.recalc.lexicon import Lexicon
 
 if TYPE_CHECKING:
     import numpy as np
@@ -47,7 +48,18 @@ class Array:
         The values row by row; `height * width` of them.
     """
 
-    __slots__ = ("_codes", "_flat", "_index", "_kinds", "_numbers", "_runs", "height", "width")
+    __slots__ = (
+        "_codes",
+        "_flat",
+        "_index",
+        "_kinds",
+        "_numbers",
+        "_runs",
+        "_span",
+        "_words",
+        "height",
+        "width",
+    )
 
     def __init__(self, height: int, width: int, flat: Sequence[Value]) -> None:
         self.height = height
@@ -56,8 +68,10 @@ class Array:
         self._numbers: NDArray[np.float64] | None = None
         self._kinds: NDArray[np.uint8] | None = None
         self._index: dict[object, int] | None = None
+        self._words: tuple[NDArray[np.int32], Lexicon] | None = None
         self._runs: dict[int, tuple[list[int], list[Value]]] | None = None
         self._codes: NDArray[np.int64] | None = None
+        self._span: tuple[int, int] | None = None
 
     @classmethod
     def of_rows(cls, rows: Sequence[Sequence[Value]]) -> Array:
@@ -116,6 +130,14 @@ class Array:
         assert self._kinds is not None
         return self._kinds
 
+    @property
+    def span(self) -> tuple[int, int]:
+        """Least and greatest kind among the values."""
+        if self._span is None:
+            kinds = self.kinds
+            self._span = (int(kinds.min()), int(kinds.max())) if kinds.size else (BLANK_KIND, BLANK_KIND)
+        return self._span
+
     def _split(self) -> None:
         import numpy as np
 
@@ -129,9 +151,9 @@ class Array:
         """float64 [height, width]: logicals as 1 and 0, blanks as 0; nan for texts and errors."""
         import numpy as np
 
-        kinds = self.kinds
-        if (kinds == NUMBER_KIND).all():
+        if self.span == (NUMBER_KIND, NUMBER_KIND):
             return self.numbers
+        kinds = self.kinds
         values = np.where(kinds == BLANK_KIND, 0.0, self.numbers)
         logical = kinds == LOGICAL_KIND
         if logical.any():
@@ -158,6 +180,17 @@ class Array:
             codes = np.array([index[lookup_key(v)] for v in self.flat], np.int64)
             self._codes = codes.reshape(self.height, self.width)
         return self._codes
+
+    def words(self) -> tuple[NDArray[np.int32], Lexicon]:
+        """Number of each text in a lexicon, as int32 [height, width], -1 for what is no text; the lexicon."""
+        if self._words is None:
+            import numpy as np
+
+            lexicon = Lexicon()
+            add = lexicon.add
+            numbers = np.array([add(v) if type(v) is str else -1 for v in self.flat], np.int32)
+            self._words = numbers.reshape(self.height, self.width), lexicon
+        return self._words
 
     def run(self, kind: int) -> tuple[list[int], list[Value]]:
         """Positions, row by row, and values of one kind alone: what a search for that kind runs over."""
@@ -216,6 +249,9 @@ class Computed(Array):
         self._index = None
         self._runs = None
         self._codes = None
+        self._words = None
+        kind = LOGICAL_KIND if data.dtype == bool else NUMBER_KIND
+        self._span = (kind, kind)
 
     def _unpack(self) -> Sequence[Value]:
         return self._data.ravel().tolist()
@@ -235,6 +271,15 @@ class Computed(Array):
         import numpy as np
 
         return self._data.astype(np.float64, copy=False)
+
+    def both(self, other: Computed) -> Computed | None:
+        """Product with another array of logicals of the same shape; None if that is not what they are."""
+        import numpy as np
+
+        a, b = self._data, other._data
+        if a.dtype != np.bool_ or b.dtype != np.bool_ or a.shape != b.shape:
+            return None
+        return Computed(np.logical_and(a, b).astype(np.float64))
 
 
 class Area(NamedTuple):

@@ -223,6 +223,10 @@ def _arithmetic(scalar: Binary, vector: Vector, a: Term, b: Term) -> Array:
     height, width = _sizes(a, b)
     if height * width < 8 or not (_fit(a, height, width) and _fit(b, height, width)):
         return each(scalar, a, b)
+    if scalar is multiply and isinstance(a, Computed) and isinstance(b, Computed):
+        both = a.both(b)
+        if both is not None:
+            return both
     x, y = _coerced(a), _coerced(b)
     if x is None or y is None:
         return each(scalar, a, b)
@@ -263,16 +267,16 @@ def _compare_arrays(operator: str, a: Term, b: Term) -> Array | None:
     """Comparison by numpy, or None where it has to go element by element."""
     if not isinstance(a, Array):
         return _compare_arrays(_MIRRORED[operator], b, a)
-    if a.height * a.width < 16 or (a.kinds == ERROR_KIND).any():
+    if a.height * a.width < 16 or a.span[1] == ERROR_KIND:
         return None
     if isinstance(b, str):
         return _compare_text(operator, a, b)
     if type(b) is float:
-        return _compare_numbers(operator, a, b, a.kinds == NUMBER_KIND)
-    if isinstance(b, Array) and (a.kinds == NUMBER_KIND).all() and (b.kinds == NUMBER_KIND).all():
+        return _compare_numbers(operator, a, b)
+    if isinstance(b, Array) and a.span == b.span == (NUMBER_KIND, NUMBER_KIND):
         height, width = _sizes(a, b)
         if _fit(a, height, width) and _fit(b, height, width):
-            return _compare_numbers(operator, a, b, None)
+            return _compare_numbers(operator, a, b)
     return None
 
 
@@ -284,22 +288,21 @@ def _compare_text(operator: str, a: Array, text: str) -> Array | None:
     return Computed(equal if operator == "=" else ~equal)
 
 
-def _compare_numbers(operator: str, a: Array, b: float | Array, numeric: NDArray[np.bool_] | None) -> Array:
+def _compare_numbers(operator: str, a: Array, b: float | Array) -> Array:
     """Numbers and blanks compare by value; texts and logicals are greater than any number."""
     import numpy as np
 
     x = a.numbers
-    if numeric is not None and not numeric.all():
+    if a.span != (NUMBER_KIND, NUMBER_KIND):
         x = np.where(a.kinds == BLANK_KIND, 0.0, np.where(a.kinds == NUMBER_KIND, x, np.inf))
     y: Any = b.numbers if isinstance(b, Array) else b
     result = _relations()[operator](x, y)
-    margin = 1e-14 * np.abs(y)
-    doubtful = (x >= y - margin) & (x <= y + margin)
-    doubtful &= x != y
-    if doubtful.any():
+    gap = np.abs(x - y)
+    close = gap <= 1e-14 * np.abs(y)
+    if np.count_nonzero(close) > np.count_nonzero(gap == 0.0):
         _, equal, _ = _HOLDS[operator]
         xs, ys = np.broadcast_to(x, result.shape), np.broadcast_to(y, result.shape)
-        for place in zip(*np.nonzero(np.broadcast_to(doubtful, result.shape)), strict=True):
+        for place in zip(*np.nonzero(close), strict=True):
             if near(float(xs[place]), float(ys[place])):
                 result[place] = equal
     return Computed(result)

@@ -53,7 +53,7 @@ def direct_number(value: Argument, *, logicals: bool = True) -> float:
 def check_errors(array: Array) -> None:
     """Ends the call with the first error of the array, if there is one."""
     if array.height * array.width > SMALL:
-        if (array.kinds == ERROR_KIND).any():
+        if array.span[1] == ERROR_KIND:
             error = array.flat[int((array.kinds.ravel() == ERROR_KIND).argmax())]
             assert isinstance(error, CellError)
             raise Fail(error)
@@ -66,12 +66,10 @@ def check_errors(array: Array) -> None:
 def number_vector(array: Array) -> NDArray[np.float64]:
     """Numbers of an array row by row, as a vector [n_numbers]; not to be written to."""
     check_errors(array)
-    import numpy as np
 
-    chosen = array.kinds == NUMBER_KIND
-    if np.count_nonzero(chosen) == chosen.size:
+    if array.span == (NUMBER_KIND, NUMBER_KIND):
         return array.numbers.ravel()
-    numbers: NDArray[np.float64] = array.numbers[chosen]
+    numbers: NDArray[np.float64] = array.numbers[array.kinds == NUMBER_KIND]
     return numbers
 
 

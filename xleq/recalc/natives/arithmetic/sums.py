@@ -70,11 +70,10 @@ def product(*arguments: Argument) -> float:
 def _factors(array: Array) -> NDArray[np.float64]:
     import numpy as np
 
-    kinds = array.kinds
-    if (kinds == NUMBER_KIND).all():
+    if array.span == (NUMBER_KIND, NUMBER_KIND):
         return array.numbers
     check_errors(array)
-    return np.where(kinds == NUMBER_KIND, array.numbers, 0.0)
+    return np.where(array.kinds == NUMBER_KIND, array.numbers, 0.0)
 
 
 @native("SUMPRODUCT", "array array*")
