@@ -7,13 +7,32 @@ from collections.abc import Sequence
 from typing import Final
 
 from xleq.cells import NAME, CellError, Grid, Value
-from xleq.functions import composition, constants, program, reactions
+from xleq.functions import (
+    composition,
+    constants,
+    formation,
+    inverse,
+    program,
+    reactions,
+    sensitivities,
+    solutions,
+    thermochemistry,
+)
 from xleq.functions.table import Argument, Example, Function, Given, Memory
 
+_TOPICS: Final = (
+    reactions,
+    constants,
+    thermochemistry,
+    composition,
+    formation,
+    inverse,
+    sensitivities,
+    solutions,
+    program,
+)
 #: Every worksheet function by name, in the order of the reference.
-TABLE: Final[dict[str, Function]] = {
-    f.name: f for topic in (reactions, constants, composition, program) for f in topic.FUNCTIONS
-}
+TABLE: Final[dict[str, Function]] = {f.name: f for topic in _TOPICS for f in topic.FUNCTIONS}
 
 _MEMORY: Final = Memory()
 

@@ -26,6 +26,7 @@ Kind = Literal[
     "temperatures",
     "temperature difference",
     "pressure",
+    "pressure difference",
     "volume",
     "concentration",
     "molar energy",
@@ -34,7 +35,7 @@ Kind = Literal[
     "concentrations",
     "K",
     "Ks",
-    "K or data",
+    "constants",
     "block",
     "want",
     "options",
@@ -199,10 +200,9 @@ def _ks(value: Value | Grid, known: tuple[str, ...]) -> tuple[float, ...]:
     return tuple(read)
 
 
-def _k_or_data(value: Value | Grid, known: tuple[str, ...]) -> tuple[float, ...] | Literal["data"]:
-    if isinstance(value, str) and value.strip().lower() == "data":
-        return "data"
-    return _ks(value, known)
+def _constants(value: Value | Grid, known: tuple[str, ...]) -> Value | Grid:
+    """As it came: what it means depends on the number of reactions, see `xleq.functions.conditions`."""
+    return value
 
 
 def _block(value: Value | Grid, known: tuple[str, ...]) -> Grid:
@@ -210,17 +210,18 @@ def _block(value: Value | Grid, known: tuple[str, ...]) -> Grid:
 
 
 @lru_cache(maxsize=1024)
-def _read_want(text: str) -> Want:
+def _read_want(text: str, more: tuple[str, ...]) -> Want:
     word, _, species = text.strip().partition(" ")
-    if word.lower() not in WANT_WORDS:
+    if word.lower() not in (*WANT_WORDS, *map(str.lower, more)):
         raise InputError(
-            f"{word!r} is not a result; known are {', '.join(WANT_WORDS)}, with a species for one cell"
+            f"{word!r} is not a result; known are {', '.join((*more, *WANT_WORDS))}, "
+            "with a species for one cell"
         )
     return Want(word.lower(), species.strip() or None)
 
 
 def _want(value: Value | Grid, known: tuple[str, ...]) -> Want:
-    return _read_want(_text(value, known))
+    return _read_want(_text(value, known), known)
 
 
 @lru_cache(maxsize=1024)
@@ -256,6 +257,7 @@ READERS: Final[dict[Kind, Callable[[Value | Grid, tuple[str, ...]], Any]]] = {
     "temperatures": _quantities("temperature"),
     "temperature difference": _quantity("temperature difference"),
     "pressure": _quantity("pressure"),
+    "pressure difference": _quantity("pressure difference"),
     "volume": _quantity("volume"),
     "concentration": _quantity("concentration"),
     "molar energy": _quantity("molar energy"),
@@ -264,7 +266,7 @@ READERS: Final[dict[Kind, Callable[[Value | Grid, tuple[str, ...]], Any]]] = {
     "concentrations": _quantities("concentration", blank_is_zero=True, negative=False),
     "K": _k,
     "Ks": _ks,
-    "K or data": _k_or_data,
+    "constants": _constants,
     "block": _block,
     "want": _want,
     "options": _options,

@@ -2,19 +2,21 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from typing import Final, Literal
 
-from xleq.constants import ln_factor_of, parse_basis
-from xleq.equilibrium import Solution, State, solve
-from xleq.errors import InputError
+from xleq.cells import Grid, Value
+from xleq.equilibrium import State
 from xleq.functions.arguments import Want
+from xleq.functions.conditions import Options, certified, problem_maker
 from xleq.functions.results import wanted
-from xleq.functions.systems import Fluid, System, system
+from xleq.functions.systems import Fluid, system
 from xleq.functions.table import Argument, Example, Function, Result
 
 Texts = tuple[str, ...]
 Numbers = tuple[float, ...]
+Given = Value | Grid
 
 _SOURCE: Final = (
     "equilibrium conditions: Smith, Van Ness and Abbott, Introduction to Chemical Engineering "
@@ -26,22 +28,29 @@ _ERRORS: Final = (
         "#VALUE! a reaction cannot be read or does not balance; a species is missing, doubled, or in no "
         "reaction and not fed; lists of unequal length; an unknown option, result or unit"
     ),
+    "#N/A a species or its critical constants are not in the data, or T lies outside their range",
     (
         "#NUM! K not above 0; a negative amount; a temperature or pressure not above 0; dependent reactions "
         "whose K contradict each other; no answer that passes its certificate"
     ),
 )
 
-_REACTIONS: Final = Argument("reactions", "texts", "reactions, one a cell or with semicolons between them")
-_K: Final = Argument("K", "Ks", "constant of each reaction, on p° = 1 bar or as option basis says")
-_SPECIES: Final = Argument(
+REACTIONS: Final = Argument("reactions", "texts", "reactions, one a cell or with semicolons between them")
+K: Final = Argument(
+    "K", "constants", "constant of each reaction, on p° = 1 bar or as option basis says; or data"
+)
+SPECIES: Final = Argument(
     "species", "texts", "every species of the reactions, and those that only pass through"
 )
-_FEED: Final = Argument("feed", "amounts", "amount of each species fed; an empty cell is 0", unit="mol")
-_T: Final = Argument("T", "temperature", "temperature", unit="K")
+FEED: Final = Argument("feed", "amounts", "amount of each species fed; an empty cell is 0", unit="mol")
+T: Final = Argument("T", "temperature", "temperature", unit="K")
+DATA: Final = Argument(
+    "data", "block", "formation data with a header row, in place of the built-in or beside them", None
+)
 
 
-def _want(word: str) -> Argument:
+def want_argument(word: str) -> Argument:
+    """The argument `want` with its default."""
     meaning = (
         "moles, fractions, pressures, concentrations, change, conversion, extents, total, state, residual or "
         "table; with a species, such as fractions NH3, for one cell"
@@ -49,96 +58,76 @@ def _want(word: str) -> Argument:
     return Argument("want", "want", meaning, word)
 
 
-def _options(*known: str) -> Argument:
+def options_argument(*known: str) -> Argument:
+    """The argument `options` with the names that it knows."""
     return Argument("options", "options", "settings such as basis=Kp[atm]", "", known=known)
 
 
 def composition_p(
     reactions: Texts,
-    k: Numbers,
+    k: Given,
     species: Texts,
     feed: Numbers,
     t: float,
     p: float,
     want: Want,
-    options: dict[str, str],
+    options: Options,
+    data: Grid | None,
 ) -> Result:
     """Gas, with pure solids and liquids, at given temperature and pressure."""
-    return _composition(reactions, k, species, feed, State("P", t, p=p), want, options, "g")
+    return _composition(reactions, k, species, feed, State("P", t, p=p), want, options, data, "g")
 
 
 def composition_v(
     reactions: Texts,
-    k: Numbers,
+    k: Given,
     species: Texts,
     feed: Numbers,
     t: float,
     v: float,
     want: Want,
-    options: dict[str, str],
+    options: Options,
+    data: Grid | None,
 ) -> Result:
     """Gas, with pure solids and liquids, at given temperature and volume."""
-    return _composition(reactions, k, species, feed, State("V", t, v=v), want, options, "g")
+    return _composition(reactions, k, species, feed, State("V", t, v=v), want, options, data, "g")
 
 
 def composition_c(
-    reactions: Texts,
-    k: Numbers,
-    species: Texts,
-    initial: Numbers,
-    want: Want,
-    options: dict[str, str],
-    t: float,
+    reactions: Texts, k: Given, species: Texts, initial: Numbers, want: Want, options: Options, t: float
 ) -> Result:
     """Solution of given concentrations, with pure solids and liquids."""
-    return _composition(reactions, k, species, initial, State("C", t, v=1.0), want, options, "aq")
+    return _composition(reactions, k, species, initial, State("C", t, v=1.0), want, options, None, "aq")
 
 
 def composition_x(
-    reactions: Texts, k: Numbers, species: Texts, feed: Numbers, want: Want, options: dict[str, str], t: float
+    reactions: Texts,
+    k: Given,
+    species: Texts,
+    feed: Numbers,
+    want: Want,
+    options: Options,
+    t: float,
+    data: Grid | None,
 ) -> Result:
     """Ideal mixture of liquids, with pure solids."""
-    return _composition(reactions, k, species, feed, State("X", t), want, options, "l")
+    return _composition(reactions, k, species, feed, State("X", t), want, options, data, "l")
 
 
 def _composition(
     reactions: Texts,
-    k: Numbers,
+    k: Given,
     species: Texts,
     feed: Numbers,
     state: State,
     want: Want,
-    options: dict[str, str],
+    options: Options,
+    data: Grid | None,
     fluid: Fluid,
 ) -> Result:
     read = system(reactions, species, fluid)
-    ln_k = standard_constants(read, k, options.get("basis"), state)
-    return wanted(read, equilibrium(read, feed, ln_k, state), want)
-
-
-def equilibrium(read: System, feed: Numbers, ln_k: Numbers, state: State) -> Solution:
-    """The certified equilibrium of a system."""
-    return solve(read.problem(feed, ln_k, state)).require()
-
-
-def standard_constants(read: System, ln_k: Numbers, basis: str | None, state: State) -> Numbers:
-    """Ln K° of each reaction from ln K on the basis that an option names.
-
-    Raises
-    ------
-    InputError
-        If the basis is unknown, or needs a pressure that the state does not fix.
-    """
-    if basis is None or len(ln_k) != len(read.reactions):
-        return ln_k
-    on = parse_basis(basis)
-    if state.kind == "X" and on.kind not in ("K", "Kx"):
-        raise InputError(
-            f"{on} is a basis for gases and solutes; constants of liquid mixtures are on mole fractions"
-        )
-    p = state.p if state.kind == "P" else None
-    pairs = zip(ln_k, read.reactions, strict=True)
-    return tuple(value - ln_factor_of(on, reaction, state.t, p) for value, reaction in pairs)
+    problem_at = problem_maker(read, feed, k, options, data, fluid)
+    return wanted(read, certified(problem_at(state)), want)
 
 
 def _function(
@@ -171,9 +160,9 @@ FUNCTIONS: Final = (
     _function(
         "P",
         (
-            _REACTIONS, _K, _SPECIES, _FEED, _T,
+            REACTIONS, K, SPECIES, FEED, T,
             Argument("P", "pressure", "total pressure, absolute unless its unit says gauge", unit="bar"),
-            _want("moles"), _options("basis"),
+            want_argument("moles"), options_argument("basis", "gas", "extrapolate"), DATA,
         ),
         f"gas and pure phases at equilibrium at T and P: {_GIVES}",
         (
@@ -181,16 +170,16 @@ FUNCTIONS: Final = (
             Example(
                 '=XLEQ_COMPOSITION_P("N2O4 = 2 NO2", 0.1426, "N2O4; NO2", "1; 0", 298.15, "1 atm", '
                 '"conversion N2O4", "basis=Kp[atm]")',
-                0.185534110721279,
+                math.sqrt(0.1426 / 4.1426),
             ),
         ),
     ),
     _function(
         "V",
         (
-            _REACTIONS, _K, _SPECIES, _FEED, _T,
+            REACTIONS, K, SPECIES, FEED, T,
             Argument("V", "volume", "volume of the gas", unit="L"),
-            _want("moles"), _options("basis"),
+            want_argument("moles"), options_argument("basis", "gas", "extrapolate"), DATA,
         ),
         f"gas and pure phases at equilibrium at T and volume: {_GIVES}",
         (Example(f'=XLEQ_COMPOSITION_V({_WATER_GAS}, 1100, 10, "moles H2")', 0.5),),
@@ -198,11 +187,12 @@ FUNCTIONS: Final = (
     _function(
         "C",
         (
-            _REACTIONS,
-            Argument("K", "Ks", "constant of each reaction, on c° = 1 mol/L or as option basis says"),
+            REACTIONS,
+            Argument("K", "constants", "constant of each, on c° = 1 mol/L or as basis says; or data"),
             Argument("species", "texts", "every solute and pure phase; solvent water may be left out"),
             Argument("initial", "concentrations", "concentration of each before reaction", unit="mol/L"),
-            _want("concentrations"), _options("basis"),
+            want_argument("concentrations"),
+            options_argument("basis", "activity", "davies", "extrapolate"),
             Argument("T", "temperature", "temperature", 298.15, unit="K"),
         ),
         "solutes at equilibrium at constant volume: what `want` names; pure phases in moles per litre",
@@ -217,10 +207,11 @@ FUNCTIONS: Final = (
     _function(
         "X",
         (
-            _REACTIONS,
-            Argument("K", "Ks", "constant of each reaction, on mole fractions"),
-            _SPECIES, _FEED, _want("moles"), _options("basis"),
+            REACTIONS,
+            Argument("K", "constants", "constant of each reaction on mole fractions; or data"),
+            SPECIES, FEED, want_argument("moles"), options_argument("basis", "extrapolate"),
             Argument("T", "temperature", "temperature", 298.15, unit="K"),
+            DATA,
         ),
         f"ideal mixture of liquids at equilibrium: {_GIVES}",
         (

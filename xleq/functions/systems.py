@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from fractions import Fraction
 from functools import lru_cache
 from typing import Final, Literal
@@ -11,7 +11,15 @@ from typing import Final, Literal
 from xleq.equilibrium import Phase, Problem, State
 from xleq.equilibrium.problem import Nonideality
 from xleq.errors import InputError, XleqError
-from xleq.reactions import Reaction, Species, check_balance, parse_reaction, parse_species
+from xleq.reactions import (
+    Reaction,
+    Species,
+    check_balance,
+    dissolved_phases,
+    parse_reaction,
+    parse_species,
+    solvent_settled,
+)
 
 #: The phase that is mixed: a gas, the solutes of a solution, or a liquid of several components.
 Fluid = Literal["g", "aq", "l"]
@@ -76,6 +84,8 @@ class System:
         InputError
             If the lists do not fit, or a species neither reacts nor is fed.
         """
+        if len(feed) > self.n_listed and not any(feed[self.n_listed :]):
+            feed = feed[: self.n_listed]  # a range drawn longer than its list, as that of the species may be
         if len(feed) != self.n_listed:
             raise InputError(f"{self.n_listed} species but {len(feed)} amounts; give one amount a species")
         if len(ln_k) != len(self.nu):
@@ -112,7 +122,7 @@ def system(reactions: tuple[str, ...], species: tuple[str, ...], fluid: Fluid) -
     notes: list[str] = []
     for number, text in enumerate(reactions, 1):
         try:
-            reaction = parse_reaction(text, fluid)
+            reaction = dissolved_phases(text) if fluid == "aq" else parse_reaction(text, fluid)
             note = check_balance(reaction)
         except XleqError as e:
             if len(reactions) == 1:
@@ -121,7 +131,7 @@ def system(reactions: tuple[str, ...], species: tuple[str, ...], fluid: Fluid) -
         read.append(reaction)
         if note:
             notes.append(f"reaction {number}: {note}")
-    taking_part = list(dict.fromkeys(_settled(s, fluid) for r in read for s in r.species))
+    taking_part = list(dict.fromkeys(s for r in read for s in r.species))
     listed = [_settled(parse_species(text, fluid), fluid) for text in species]
     found = [_match(s, text, taking_part) for s, text in zip(listed, species, strict=True)]
     for i, s in enumerate(found):
@@ -140,13 +150,12 @@ def system(reactions: tuple[str, ...], species: tuple[str, ...], fluid: Fluid) -
             )
     for s in found:
         _check_phase(s, fluid)
-    nu = tuple(tuple(_coefficient(r, s, fluid) for s in found) for r in read)
-    mixed = {"g": "g", "aq": "aq", "l": "l"}[fluid]
+    nu = tuple(tuple(r.coefficient(s) or Fraction(0) for s in found) for r in read)
     formulas = tuple(s.composition() for s in found)
     return System(
         tuple(names),
         tuple(found),
-        tuple("fluid" if s.phase == mixed else "pure" for s in found),
+        tuple("fluid" if s.phase == fluid else "pure" for s in found),
         tuple(read),
         nu,
         None if any(f is None for f in formulas) else formulas,
@@ -156,10 +165,7 @@ def system(reactions: tuple[str, ...], species: tuple[str, ...], fluid: Fluid) -
 
 
 def _settled(s: Species, fluid: Fluid) -> Species:
-    """Water without a phase in a solution is the solvent, not a solute."""
-    if fluid == "aq" and s.name == "H2O" and not s.marked:
-        return replace(s, phase="l")
-    return s
+    return solvent_settled(s) if fluid == "aq" else s
 
 
 def _match(s: Species, text: str, taking_part: list[Species]) -> Species:
@@ -195,11 +201,6 @@ def _check_phase(s: Species, fluid: Fluid) -> None:
             + " beside pure solids"
             + ("" if fluid == "l" else " and liquids")
         )
-
-
-def _coefficient(reaction: Reaction, s: Species, fluid: Fluid) -> Fraction:
-    pairs = zip(reaction.species, reaction.nu, strict=True)
-    return sum((nu for own, nu in pairs if _settled(own, fluid) == s), Fraction(0))
 
 
 def _place(species: tuple[Species, ...], text: str) -> int:

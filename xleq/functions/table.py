@@ -200,6 +200,8 @@ def _laid_out(function: Function, given: Sequence[Given], result: Result) -> Val
     if result and isinstance(result[0], list):
         return result
     values = cast(list[Value], result)
+    if len(values) == 1:
+        return values[0]
     index = function.layout_argument
     if index is not None and index < len(given):
         item = given[index]
