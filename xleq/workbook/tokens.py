@@ -14,17 +14,17 @@ from typing import Final
 
 from xleq.workbook.markup import MAIN
 
-_ATTRIBUTES: Final = r"((?: (?:\w+|x14ac:dyDescent)=\"[^\"<&]*\")*)"
+_ATTRIBUTES: Final = r"(?: (?:\w+|x14ac:dyDescent)=\"[^\"<&\t\r\n]*\")*"
 _PATTERN: Final = (
     r"\s*(?:<c r=\"([A-Z]{1,3})([1-9][0-9]{0,6})\"(?: s=\"([0-9]{1,6})\")?(?: t=\"(\w+)\")?"
     r"(?: cm=\"([0-9]{1,6})\")?(?: vm=\"([0-9]{1,6})\")?(?:/>|>"
-    rf"(?:<f{_ATTRIBUTES}(?:/>|>([^<]*)</f>))?"
-    r"(?:<v(?: xml:space=\"preserve\")?>([^<]*)</v>|"
+    rf"(?:<f({_ATTRIBUTES})(?:/>|>([^<]*)</f>))?"
+    r"(?:<v/>()|<v(?: xml:space=\"preserve\")?>([^<]*)</v>|"
     r"<is><t(?: xml:space=\"preserve\")?>([^<]*)</t></is>)?</c>)"
-    rf"|<row{_ATTRIBUTES} ?(/?)>|(</row>))"
+    rf"|<row(?P<row>{_ATTRIBUTES}) ?(?P<slash>/?)>|</row>)"
 )
-#: Groups: column letters, row, style, type, cm, vm, attributes and text of the formula, value, inline text;
-#: attributes of a row and its closing slash; the end of a row.
+#: Groups: column letters, row, style, type, cm, vm, attributes and text of the formula, mark of an empty
+#: value, value, inline text; attributes of a row and its closing slash. All None: the end of a row.
 TOKEN: Final = re.compile(_PATTERN, re.ASCII)
 #: The same on bytes.
 TOKEN_BYTES: Final = re.compile(_PATTERN.encode())

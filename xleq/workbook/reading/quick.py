@@ -54,7 +54,7 @@ def _read_tokens(reader: SheetReader, text: str) -> None:
         if token.start() != at:
             raise NotUsualError
         at = token.end()
-        letters, number, style, kind, cm, vm, of_formula, f, v, inline, of_row, slash, _ = token.groups()
+        letters, number, style, kind, cm, vm, of_formula, f, empty, v, inline, of_row, slash = token.groups()
         if letters is None:
             row, row_text = _row(reader, of_row, slash, row, row_text)
             last_column = 0
@@ -83,7 +83,7 @@ def _read_tokens(reader: SheetReader, text: str) -> None:
             vm,
             None if of_formula is None else _attributes(of_formula),
             _plain(f or ""),
-            None if v is None else _plain(v),
+            empty if v is None else _plain(v),
             None if inline is None else _plain(inline),
         )
     if row_text or text[at:].strip():

@@ -68,6 +68,11 @@ class Layout:
     column_styles: list[tuple[int, int, str]] = field(default_factory=list)
 
 
+def _kept(attributes: dict[str, str]) -> dict[str, str]:
+    """What matters of a row's attributes."""
+    return {name: attributes[name] for name in ("r", "s", "customFormat", "spans") if name in attributes}
+
+
 class _Scanner:
     """Handlers of the parser that notes positions."""
 
@@ -130,7 +135,7 @@ class _Scanner:
         self._number = int(text) if text else self._number + 1
         self._column = 0
         start, tag_end = self._span()
-        row = Row(start, tag_end, tag_end, self._number, attributes)
+        row = Row(start, tag_end, tag_end, self._number, _kept(attributes))
         self.rows.append(row)
         self._row = row if self._number in self.wanted_rows or not text else None
 
@@ -243,13 +248,13 @@ def _usual_rows(data: bytes, start: int, end: int, wanted_rows: Collection[int])
             if wanted:
                 column = columns.get(letters) or columns.setdefault(letters, column_number(letters.decode()))
                 rows[-1].cells.append((column, token.start(1) - len('<c r="'), at))
-        elif token[11] is not None:
-            attributes = dict(ATTRIBUTE.findall(token[11].decode()))
+        elif token["row"] is not None:
+            attributes = dict(ATTRIBUTE.findall(token["row"].decode()))
             number = attributes.get("r", "").encode()
             if inside or not number.isdigit():
                 return None
-            rows.append(Row(token.start(11) - len("<row"), at, at, int(number), attributes))
-            inside, wanted = not token[12], rows[-1].number in wanted_rows
+            rows.append(Row(token.start("row") - len("<row"), at, at, int(number), _kept(attributes)))
+            inside, wanted = not token["slash"], rows[-1].number in wanted_rows
         else:
             inside = False
             rows[-1].end = at
