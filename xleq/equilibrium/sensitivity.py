@@ -279,7 +279,7 @@ def _new_and_inert(problem: Problem, prepared: Prepared) -> Floats:
     """1 for fluid species that are not fed and take part in no reaction, else 0."""
     idle = _idle(problem)
     fluid = np.array([phase == "fluid" for phase in problem.phases])
-    return (idle & fluid & ~prepared.can).astype(np.float64)
+    return np.asarray(idle & fluid & ~prepared.can, dtype=np.float64)
 
 
 def _opening(problem: Problem, prepared: Prepared, by_feed: Floats) -> Floats:

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from xleq.equilibrium.certificate import certify
 from xleq.equilibrium.many.newton import System
-from xleq.equilibrium.many.nonideal import choose_with_model
+from xleq.equilibrium.many.nonideal import WithNotes, choose_with_model
 from xleq.equilibrium.many.phases import Outcome, choose
 from xleq.equilibrium.problem import SMALLEST_AMOUNT, Certificate, Problem, Solution, Status, check
 from xleq.equilibrium.structure import check_dependent, check_size, eliminate, formable, structure
@@ -98,7 +98,7 @@ def solve(problem: Problem) -> Solution:
     AmbiguousError
         If a dependent reaction's constant contradicts the others.
     OutOfRangeError
-        If the system is too large.
+        If the system is too large, or the composition beyond the range of the model.
     InputError
         If the records do not fit together.
 
@@ -163,6 +163,9 @@ def _finish(problem: Problem, prepared: Prepared, n: Floats, status: Status, ste
         for name, phase, x in zip(problem.species, problem.phases, amounts, strict=True)
         if phase == "pure" and x == 0.0
     )
+    model = problem.model
+    if isinstance(model, WithNotes) and status != "fluid vanished":
+        notes += model.notes(n, problem.state)
     certificate = certify(problem, amounts)
     xi = tuple(extents(problem, amounts).tolist())
     return Solution(problem, amounts, xi, status, gone, certificate, steps, METHOD, notes)

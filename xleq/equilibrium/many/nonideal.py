@@ -8,6 +8,7 @@ Jacobian, the model's answer to the composition from finite differences.
 from __future__ import annotations
 
 from dataclasses import replace
+from typing import Protocol, runtime_checkable
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,6 +26,24 @@ LONGEST_CHANGE = 2.0
 _AGREES = 2e-14
 _CLOSE = 1e-11
 _STEP = 1e-5
+
+
+@runtime_checkable
+class WithSlopes(Protocol):
+    """A model that knows how its ln gamma answers to the amounts."""
+
+    def ln_gamma_slopes(self, n: Floats, state: State) -> tuple[Floats, Floats]:
+        """Ln gamma [n_species] and its derivatives by the amounts [n_species, n_species, 1/mol]."""
+        ...
+
+
+@runtime_checkable
+class WithNotes(Protocol):
+    """A model that has something to say about a composition, or refuses it."""
+
+    def notes(self, n: Floats, state: State) -> tuple[str, ...]:
+        """What a checker should know; raises OutOfRangeError beyond the range of the model."""
+        ...
 
 
 def choose_with_model(model: Nonideality, state: State, system: System, pure: NDArray[np.intp]) -> Outcome:
@@ -59,9 +78,10 @@ def choose_with_model(model: Nonideality, state: State, system: System, pure: ND
 def _agree(model: Nonideality, state: State, system: System, pure: NDArray[np.intp], part: float) -> Outcome:
     """Newton's method on ln gamma, of which only a part counts."""
     z = system.ln_gamma.copy()
+    o: Outcome | None = None
     steps, best, stalled = 0, np.inf, 0
     for _ in range(MAX_ROUNDS):
-        o = choose(replace(system, ln_gamma=z), pure)
+        o = choose(replace(system, ln_gamma=z.copy()), pure, o)
         steps += o.steps
         if o.amounts is None or o.system is None or o.path is None:
             return replace(o, steps=steps)
@@ -99,7 +119,12 @@ def _composition(o: Outcome, fluid: NDArray[np.intp]) -> Floats:
 
 
 def ln_gamma_slope(model: Nonideality, state: State, n: Floats, fluid: NDArray[np.intp]) -> Floats:
-    """D ln gamma / d ln n of the fluid species [n_fluid, n_fluid], by central differences."""
+    """D ln gamma / d ln n of the fluid species [n_fluid, n_fluid].
+
+    From the model itself if it has its slopes, else by central differences.
+    """
+    if isinstance(model, WithSlopes):
+        return np.asarray(model.ln_gamma_slopes(n, state)[1][np.ix_(fluid, fluid)] * n[fluid])
     out = np.zeros((len(fluid), len(fluid)))
     for column, i in enumerate(fluid):
         up, down = n.copy(), n.copy()

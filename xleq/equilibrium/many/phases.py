@@ -139,17 +139,30 @@ def _amounts_alone(system: System, f: Frame) -> list[float]:
     return [x / denominator for x in totals]
 
 
-def choose(base: System, pure: NDArray[np.intp]) -> Outcome:
+def choose(base: System, pure: NDArray[np.intp], near: Outcome | None = None) -> Outcome:
     """The set of pure phases that contradicts nothing, and the equilibrium with it.
 
     Phases are dropped and added one by one, worst first, from those that are fed. If that comes to no end,
     the set is followed from an easy equilibrium to the one wanted; if that fails too, the sets are tried in
     turn, nearest first, up to `MAX_SETS`.
+
+    Parameters
+    ----------
+    base : System
+        With no pure phase present.
+    pure : array of int
+        Pure phases that can be there.
+    near : Outcome, optional
+        Of a problem that differs little: where to begin.
     """
     tried: dict[frozenset[int], Outcome] = {}
     ln_n = first_guess(base)
     fed = frozenset(int(p) for p in pure if base.n0[p] > 0.0)
-    done = _exchange(base, pure, fed, ln_n, tried)
+    done = None
+    if near is not None and near.amounts is not None:
+        done = _exchange(base, pure, near.present, near.amounts.ln_n, tried)
+    if done is None:
+        done = _exchange(base, pure, fed, ln_n, tried)
     if done is None and len(pure):
         led, at = follow(base, pure, ln_n)
         if led is not None:
