@@ -25,6 +25,13 @@ Status = Literal["equilibrium", "exhausted", "frozen", "fluid vanished", "indete
 
 #: Amounts below this are given as 0: a double holds them no longer with its full precision. [mol]
 SMALLEST_AMOUNT = 1e-300
+#: Amounts above this are refused: sums and products of them must stay within a double. [mol]
+LARGEST_AMOUNT = 1e100
+#: Largest ln K, either way; that of a mole of anything at 1 K is less. [-]
+LARGEST_LN_K = 1e6
+#: Ranges of temperature [K], and of pressure [bar] or volume [L].
+TEMPERATURES = (1e-3, 1e6)
+PRESSURES = VOLUMES = (1e-100, 1e100)
 
 
 @dataclass(frozen=True, slots=True)
@@ -189,7 +196,8 @@ def check(problem: Problem) -> None:
         If lengths differ, or an amount or a constant is not a finite number, or an amount is negative, or
         nothing is fed.
     OutOfRangeError
-        If the temperature, pressure or volume is not positive, or there is no fluid at all.
+        If the temperature, pressure or volume is not positive, an amount, a constant or one of these is
+        beyond what doubles can carry through the calculation, or there is no fluid at all.
     """
     species, n0 = problem.species, problem.n0
     width = len(species)
@@ -200,20 +208,37 @@ def check(problem: Problem) -> None:
     for name, amount in zip(species, n0, strict=True):
         if not 0.0 <= amount < math.inf:
             raise InputError(f"the feed of {name} is {amount}: it must be a number, at least 0")
+        if amount and not SMALLEST_AMOUNT <= amount <= LARGEST_AMOUNT:
+            raise OutOfRangeError(
+                f"the feed of {name} is {amount:g} mol: it must be 0 or from {SMALLEST_AMOUNT:g} to "
+                f"{LARGEST_AMOUNT:g}"
+            )
     for place, ln_k in enumerate(problem.ln_k, 1):
         if not -math.inf < ln_k < math.inf:
             raise InputError(f"ln K of reaction {place} is {ln_k}: it must be a finite number")
+        if abs(ln_k) > LARGEST_LN_K:
+            raise OutOfRangeError(f"ln K of reaction {place} is {ln_k:g}: more than 1e6 is not solved")
     if not any(n0):
         raise InputError("nothing is fed: every amount is 0")
     if "fluid" not in problem.phases:
         raise OutOfRangeError("there is no gas or solution: every species is a pure solid or liquid")
-    state = problem.state
-    if state.kind in "PV" and not 0.0 < state.t < math.inf:
-        raise OutOfRangeError(f"the temperature is {state.t} K: it must be above 0")
-    if state.kind == "P" and not 0.0 < state.p < math.inf:
-        raise OutOfRangeError(f"the pressure is {state.p} bar: it must be above 0")
-    if state.kind in "VC" and not 0.0 < state.v < math.inf:
-        raise OutOfRangeError(f"the volume is {state.v} L: it must be above 0")
+    _check_state(problem.state)
+
+
+def _check_state(state: State) -> None:
+    kind = state.kind
+    if kind in "PV":
+        _check_range("temperature", state.t, "K", TEMPERATURES)
+    if kind == "P":
+        _check_range("pressure", state.p, "bar", PRESSURES)
+    elif kind in "VC":
+        _check_range("volume", state.v, "L", VOLUMES)
+
+
+def _check_range(what: str, value: float, unit: str, ends: tuple[float, float]) -> None:
+    if not ends[0] <= value <= ends[1]:
+        wanted = f"from {ends[0]:g} to {ends[1]:g}" if value > 0.0 else "above 0"
+        raise OutOfRangeError(f"the {what} is {value:g} {unit}: it must be {wanted}")
 
 
 @dataclass(frozen=True, slots=True)
@@ -270,6 +295,31 @@ def shifts(batch: Batch) -> NDArray[np.float64]:
     if batch.kind == "C":
         return -np.log(batch.v)
     return np.zeros(len(batch.n0))
+
+
+def sound(batch: Batch) -> NDArray[np.bool_]:
+    """Instances [n_instances] whose numbers pass `check`; it gives the reason for the others one by one.
+
+    Parameters
+    ----------
+    batch : Batch
+    """
+    import numpy as np
+
+    n0 = batch.n0
+    fed = n0 > 0.0
+    held = {
+        "P": ((batch.t, TEMPERATURES), (batch.p, PRESSURES)),
+        "V": ((batch.t, TEMPERATURES), (batch.v, VOLUMES)),
+        "C": ((batch.v, VOLUMES),),
+        "X": (),
+    }[batch.kind]
+    with np.errstate(invalid="ignore"):
+        ok = np.all((n0 == 0.0) | ((n0 >= SMALLEST_AMOUNT) & (n0 <= LARGEST_AMOUNT)), axis=1)
+        ok &= fed.any(axis=1) & np.all(np.abs(batch.ln_k) <= LARGEST_LN_K, axis=1)
+        for values, (low, high) in held:
+            ok &= (values >= low) & (values <= high)
+    return np.asarray(ok)
 
 
 @dataclass(frozen=True, slots=True)

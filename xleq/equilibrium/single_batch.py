@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from xleq.equilibrium.certificate.batch import accept
-from xleq.equilibrium.problem import SMALLEST_AMOUNT, Batch, BatchSolution, Status, shifts
+from xleq.equilibrium.problem import SMALLEST_AMOUNT, Batch, BatchSolution, Status, shifts, sound
 from xleq.equilibrium.single import solve as solve_one
 from xleq.errors import XleqError
 
@@ -158,17 +158,6 @@ def _part(batch: Batch, places: Places) -> Batch:
     )
 
 
-def _sound(batch: Batch) -> Flags:
-    """Instances whose numbers mean something; the others are left to the checks of single problems."""
-    n0 = batch.n0
-    sound: Flags = np.asarray(np.all(np.isfinite(n0) & (n0 >= 0.0), axis=1))
-    sound &= (n0.max(axis=1) > 0.0) & np.isfinite(batch.ln_k).all(axis=1)
-    held = {"P": (batch.t, batch.p), "V": (batch.t, batch.v), "C": (batch.v,), "X": ()}[batch.kind]
-    for values in held:
-        sound &= np.isfinite(values) & (values > 0.0)
-    return sound
-
-
 def _in_arrays(batch: Batch) -> Found | None:
     """The instances that can be solved in doubles alone; None if there are none."""
     nu = np.array([c.numerator / c.denominator for c in batch.nu[0]])
@@ -176,7 +165,7 @@ def _in_arrays(batch: Batch) -> Found | None:
     if not ((nu > 0.0).any() and (nu < 0.0).any() and reacting.any()):
         return None
     with np.errstate(all="ignore"):
-        places = np.flatnonzero(_sound(batch))
+        places = np.flatnonzero(sound(batch))
         back, ahead = _ends(batch, places, nu, 1), _ends(batch, places, nu, -1)
         rest = batch.n0[places][:, _inert(batch, nu)].sum(axis=1)
         usable = back.sure & ahead.sure & (back.width + ahead.width > 0.0)
