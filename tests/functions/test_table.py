@@ -17,7 +17,46 @@ FUNCTIONS = list(TABLE.values())
 EXAMPLES = [(f, e) for f in FUNCTIONS for e in f.examples]
 
 # The contract: every function of the design, with its arguments, optional ones in brackets.
-SYNTAX = ["", "XLEQ_BALANCE(reaction)", "XLEQ_EXPRESSION(reaction, [basis])", "XLEQ_GAS_CHANGE(reaction)", "XLEQ_COEFFICIENT(reaction, species)", "XLEQ_COMBINE(reactions, multipliers)", "XLEQ_MULTIPLIERS(target, reactions)", "XLEQ_MOLAR_MASS(formula)", "XLEQ_KP(Kc, reaction, T, [pressure_unit], [concentration_unit])", "XLEQ_KC(Kp, reaction, T, [pressure_unit], [concentration_unit])", "XLEQ_K_CONVERT(K, reaction, from_basis, to_basis, [T], [P])", "XLEQ_K_SCALE(K, factor)", "XLEQ_K_COMBINE(target, reactions, Ks)", "XLEQ_K_AT(K, T_of_K, T, dH, [dCp])", "XLEQ_K_DATA(reaction, T, [data])", "XLEQ_K_FIT(T, K, [terms])", "XLEQ_K_FROM_FIT(coefficients, T)", "XLEQ_K_FROM_DG(dG, T)", "XLEQ_DG_FROM_K(K, T)", "XLEQ_REACTION(reaction, property, [T], [data])", "XLEQ_SPECIES(species, property, [T], [data])", "XLEQ_Q(reaction, species, amounts, [P], [T], [basis])", "XLEQ_AFFINITY(K, Q, T)", "XLEQ_APPROACH(reaction, species, amounts, T, P, [data])", "XLEQ_COMPOSITION_P(reactions, K, species, feed, T, P, [want], [options], [data])", "XLEQ_COMPOSITION_V(reactions, K, species, feed, T, V, [want], [options], [data])", "XLEQ_COMPOSITION_C(reactions, K, species, initial, [want], [options], [T])", "XLEQ_COMPOSITION_X(reactions, K, species, feed, [want], [options], [T], [data])", "XLEQ_COMPOSITION_DATA(species, feed, T, P, [want], [options], [data])", "XLEQ_ADIABATIC(species, feed, T_feed, P, [want], [options], [data])", "XLEQ_T_FOR(reactions, K, species, feed, P, target, value, [T_low], [T_high], [data])", "XLEQ_P_FOR(reactions, K, species, feed, T, target, value, [P_low], [P_high])", "XLEQ_SENSITIVITY(reactions, K, species, feed, T, P, [to])", "XLEQ_UNCERTAINTY(reactions, K, u_lnK, species, feed, T, P, [u_T], [u_P])", "XLEQ_FUGACITY_COEFFICIENT(species, fractions, T, P, [data])", "XLEQ_IONIC_STRENGTH(species, concentrations)", "XLEQ_ACTIVITY_COEFFICIENT(species, ionic_strength, [T], [model])", "XLEQ_PH(species, concentrations, [options])", "XLEQ_VERSION()", ""][1:-1]
+SYNTAX = """
+XLEQ_BALANCE(reaction)
+XLEQ_EXPRESSION(reaction, [basis])
+XLEQ_GAS_CHANGE(reaction)
+XLEQ_COEFFICIENT(reaction, species)
+XLEQ_COMBINE(reactions, multipliers)
+XLEQ_MULTIPLIERS(target, reactions)
+XLEQ_MOLAR_MASS(formula)
+XLEQ_KP(Kc, reaction, T, [pressure_unit], [concentration_unit])
+XLEQ_KC(Kp, reaction, T, [pressure_unit], [concentration_unit])
+XLEQ_K_CONVERT(K, reaction, from_basis, to_basis, [T], [P])
+XLEQ_K_SCALE(K, factor)
+XLEQ_K_COMBINE(target, reactions, Ks)
+XLEQ_K_AT(K, T_of_K, T, dH, [dCp])
+XLEQ_K_DATA(reaction, T, [data])
+XLEQ_K_FIT(T, K, [terms])
+XLEQ_K_FROM_FIT(coefficients, T)
+XLEQ_K_FROM_DG(dG, T)
+XLEQ_DG_FROM_K(K, T)
+XLEQ_REACTION(reaction, property, [T], [data])
+XLEQ_SPECIES(species, property, [T], [data])
+XLEQ_Q(reaction, species, amounts, [P], [T], [basis])
+XLEQ_AFFINITY(K, Q, T)
+XLEQ_APPROACH(reaction, species, amounts, T, P, [data])
+XLEQ_COMPOSITION_P(reactions, K, species, feed, T, P, [want], [options], [data])
+XLEQ_COMPOSITION_V(reactions, K, species, feed, T, V, [want], [options], [data])
+XLEQ_COMPOSITION_C(reactions, K, species, initial, [want], [options], [T])
+XLEQ_COMPOSITION_X(reactions, K, species, feed, [want], [options], [T], [data])
+XLEQ_COMPOSITION_DATA(species, feed, T, P, [want], [options], [data])
+XLEQ_ADIABATIC(species, feed, T_feed, P, [want], [options], [data])
+XLEQ_T_FOR(reactions, K, species, feed, P, target, value, [T_low], [T_high], [data])
+XLEQ_P_FOR(reactions, K, species, feed, T, target, value, [P_low], [P_high])
+XLEQ_SENSITIVITY(reactions, K, species, feed, T, P, [to])
+XLEQ_UNCERTAINTY(reactions, K, u_lnK, species, feed, T, P, [u_T], [u_P])
+XLEQ_FUGACITY_COEFFICIENT(species, fractions, T, P, [data])
+XLEQ_IONIC_STRENGTH(species, concentrations)
+XLEQ_ACTIVITY_COEFFICIENT(species, ionic_strength, [T], [model])
+XLEQ_PH(species, concentrations, [options])
+XLEQ_VERSION()
+""".strip().splitlines()  # noqa: SIM905
 
 
 def test_the_table_has_every_function_with_its_arguments() -> None:
