@@ -11,6 +11,7 @@ XleqError
 │   └── NotCertifiedError   a result was found but failed its certificate
 ├── MissingDataError        a datum is not in the table              → #N/A
 ├── FormulaError            spreadsheet formula text that cannot be used
+├── HostError               a spreadsheet program is absent, or cannot take the add-in
 └── BookError               a workbook that is refused; nothing is written
     ├── MissingBookError    there is no such file
     ├── LockedBookError     it is open elsewhere or cannot be written
@@ -108,6 +109,12 @@ class FormulaError(XleqError):
     """A spreadsheet formula cannot be parsed, or uses something unsupported."""
 
     code = "formula"
+
+
+class HostError(XleqError):
+    """A spreadsheet program is absent, unfit, or would not take the add-in."""
+
+    code = "host"
 
 
 class BookError(XleqError):
