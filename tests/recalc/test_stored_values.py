@@ -85,3 +85,13 @@ def test_random_numbers_repeat_with_their_seed():
     first, again, other = (result(cells, seed=s).values for s in (1, 1, 2))
     assert first == again
     assert first != other
+
+
+def test_an_iterated_circle_within_the_files_limit_is_left_as_it_is_stored():
+    settings = Calculation(iterate=True, max_change=0.001)
+    cells = {"A1": "=B1/2+1", "B1": "=A1"}
+    done = result(book({"S": cells}, {"S!A1": 2.0004, "S!B1": 2.0004}, calculation=settings))
+    assert (done.changed, done.disagreements, done.kept) == ([], [], [])
+    done = result(book({"S": cells}, {"S!A1": 3.0, "S!B1": 3.0}, calculation=settings))
+    assert done.disagreements == []
+    assert abs(done.values[at("A1")] - 2.0) < 0.002

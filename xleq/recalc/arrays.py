@@ -81,6 +81,7 @@ class Spreader:
             self._spill(cell, formula, result, bits)
             return
         area = self.area(cell, formula)
+        self.engine.names.spills[cell] = area
         height, width = area.bottom - area.top + 1, area.right - area.left + 1
         whole = result if isinstance(result, Array) else Array(1, 1, [result])
         self._put(cell, area, padded(whole, height, width), bits)

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from xleq.cells import Value
-from xleq.recalc.columns import Blocked
+from xleq.cells import BLANK, Value
+from xleq.recalc.columns import CHANGED, Blocked
 from xleq.recalc.precedents import areas_of
 
 if TYPE_CHECKING:
@@ -16,12 +17,33 @@ def iterate(engine: Engine, cells: list[Cell]) -> None:
     """Evaluate the formulas of a circle again and again, in the order of the sheet.
 
     It ends when no number changes by more than the file's limit, or after the file's number of rounds.
-    Rounds start from the stored values.
+    Rounds start from the stored values; a result within the limit of the stored one is the stored one.
     """
     members = sorted(_circle(engine, cells))
+    calculation = engine.book.calculation
     for cell in members:
         stored = engine.book.sheets[cell[0]].stored.get(cell[1:], 0.0)
         engine.stores[cell[0]].put(cell[1:], stored)
+    settings = engine.settings
+    engine.settings = replace(settings, check=False)
+    try:
+        _rounds(engine, members)
+    finally:
+        engine.settings = settings
+    for cell in members:
+        sheet, spot = cell[0], cell[1:]
+        store = engine.stores[sheet]
+        before = engine.book.sheets[sheet].stored.get(spot, BLANK)
+        value = store.value(spot)
+        if store.bits(spot) or not settings.check:
+            continue
+        if _change(before, value) <= calculation.max_change:
+            value = before
+        engine.results[sheet][spot] = value
+        store.put(spot, value, CHANGED if value is not before else 0)
+
+
+def _rounds(engine: Engine, members: list[Cell]) -> None:
     calculation = engine.book.calculation
     for _ in range(calculation.max_iterations):
         largest = 0.0

@@ -29,8 +29,8 @@ zero times or more. A group of kinds in brackets repeats as a whole: ``(range an
 For the kinds list, operand and lazy, and for value, any and array where they are optional, an argument left
 empty arrives as `MISSING`; for value, any and array that are not, it arrives as a blank.
 
-A definition returns a float (never an int), str, bool, `BLANK`, a `CellError`, an `Array` or a `Ref`, or raises
-`Fail`. Where it computes with `number` alone, `OverflowError` and `ValueError` become #NUM!,
+A definition returns a float (never an int), str, bool, `BLANK`, a `CellError`, an `Array` or a `Ref`, or
+raises `Fail`. Where it computes with `number` alone, `OverflowError` and `ValueError` become #NUM!,
 `ZeroDivisionError` becomes #DIV/0!, and a result that is not finite becomes #NUM!.
 """
 
