@@ -56,7 +56,7 @@ XLEQ_IONIC_STRENGTH(species, concentrations)
 XLEQ_ACTIVITY_COEFFICIENT(species, ionic_strength, [T], [model])
 XLEQ_PH(species, concentrations, [options])
 XLEQ_VERSION()
-""".strip().splitlines()  # noqa: SIM905
+""".strip().splitlines()
 
 
 def test_the_table_has_every_function_with_its_arguments() -> None:
