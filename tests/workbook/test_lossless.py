@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 from lxml import etree
 
-from xleq.cells import BLANK, NUM, Value
+from xleq.cells import BLANK, CALC, NUM, VALUE, Value
 from xleq.errors import BookError
 from xleq.workbook import Book, FormulaKind, Limits, Results, SheetResults, open_book, write_book
 
@@ -126,3 +126,49 @@ def test_a_book_of_the_corpus_written_without_changes_is_the_same_bytes(path: Pa
     assert (written.parts, written.n_cells) == ((), 0)
     assert contents(path) == contents(tmp_path / "same.xlsx")
     assert members(path) == members(tmp_path / "same.xlsx")
+
+
+def grown(book: Book) -> Results:
+    """Each dynamic array one row and one column larger, where nothing stands in its way."""
+    results: Results = {}
+    for sheet in book.sheets:
+        taken = sheet.stored.keys() | sheet.formulas.keys()
+        found = results[sheet.index] = SheetResults()
+        for place, formula in sheet.formulas.items():
+            if formula.kind is FormulaKind.ARRAY and formula.dynamic and formula.area is not None:
+                area = formula.area._replace(bottom=formula.area.bottom + 1, right=formula.area.right + 1)
+                fresh = [cell for cell in area.places() if not formula.area.holds(*cell)]
+                if not any(cell in taken or cell in found.values for cell in fresh):
+                    found.areas[place] = area
+                    found.values |= dict.fromkeys(area.places(), 0.5)
+    return results
+
+
+@pytest.mark.skipif(not FILES, reason="no corpus of workbooks beside the project")
+def test_spills_of_the_corpus_grow_and_shrink_back(tmp_path: Path) -> None:
+    n_spills = 0
+    for path in FILES:
+        try:
+            book = open_book(path)
+        except BookError:
+            continue
+        larger = grown(book)
+        if not any(found.areas for found in larger.values()):
+            continue
+        new, back = tmp_path / "new.xlsx", tmp_path / "back.xlsx"
+        write_book(book, larger, new)
+        again = open_book(new)
+        smaller: Results = {}
+        for sheet, old in zip(again.sheets, book.sheets, strict=True):
+            found = larger[sheet.index]
+            n_spills += len(found.areas)
+            assert {p: sheet.formulas[p].area for p in found.areas} == found.areas
+            assert sheet.stored == {**old.stored, **found.values}
+            areas = {p: area for p in found.areas if (area := old.formulas[p].area) is not None}
+            values = {cell: old.stored.get(cell, BLANK) for area in areas.values() for cell in area.places()}
+            smaller[sheet.index] = SheetResults(values, areas)
+        write_book(again, smaller, back)
+        for sheet, old in zip(open_book(back).sheets, book.sheets, strict=True):
+            as_stored = {place: VALUE if value == CALC else value for place, value in old.stored.items()}
+            assert (sheet.stored, sheet.formulas) == (as_stored, old.formulas)
+    assert n_spills > 100

@@ -17,8 +17,11 @@ from lxml import etree
 from xlsxwriter.worksheet import Worksheet
 
 from xleq.cells import BLANK
+from xleq.errors import BookError
 from xleq.workbook import Book, FormulaKind, Results, SheetResults, open_book, write_book
 
+CORPUS = Path(__file__).resolve().parents[2].parent / "shared" / "corpus"
+FILES = sorted(CORPUS.rglob("*.xlsx"))
 PARSER = etree.XMLParser(resolve_entities=False, no_network=True)
 
 
@@ -156,40 +159,59 @@ def test_a_book_with_every_feature_keeps_all_of_them(rich: Path) -> None:
     assert again.sheets[0].formulas.keys() == book.sheets[0].formulas.keys()
 
 
-@pytest.mark.office
-@pytest.mark.parametrize("name", ["loop.xlsx", "loop.xlsm"])
-def test_libreoffice_opens_a_written_book_with_its_new_values(name: str, tmp_path: Path) -> None:
+def converted(files: list[Path], folder: Path, patience: float) -> list[Path]:
+    """What LibreOffice makes of workbooks as text, without calculating them anew; skips without it."""
     office = shutil.which("soffice") or shutil.which("libreoffice")
     if office is None:
         assert "CI" not in os.environ, "LibreOffice must be there in CI"
         pytest.skip("LibreOffice is not installed")
-    old = make_rich_book(tmp_path / name)
-    book = open_book(old)
-    new = tmp_path / f"new{old.suffix}"
-    write_book(book, grown_results(book), new, recalculate_on_load=False)
-    profile = tmp_path / "profile"
-    (profile / "user").mkdir(parents=True)
-    item = (
-        '<item oor:path="/org.openoffice.Office.Calc/Formula/Load"><prop oor:name="OOXMLRecalcMode" '
-        'oor:op="fuse"><value>1</value></prop></item>'
-    )
-    (profile / "user" / "registrymodifications.xcu").write_text(
+    user = folder / "profile" / "user"
+    user.mkdir(parents=True)
+    (user / "registrymodifications.xcu").write_text(
         '<?xml version="1.0" encoding="UTF-8"?><oor:items xmlns:oor="http://openoffice.org/2001/registry" '
-        f'xmlns:xs="http://www.w3.org/2001/XMLSchema">{item}</oor:items>'
+        'xmlns:xs="http://www.w3.org/2001/XMLSchema"><item oor:path="/org.openoffice.Office.Calc/Formula/Load">'
+        '<prop oor:name="OOXMLRecalcMode" oor:op="fuse"><value>1</value></prop></item></oor:items>'
     )
     command = [
         office,
-        f"-env:UserInstallation={profile.as_uri()}",
+        f"-env:UserInstallation={user.parent.as_uri()}",
         "--headless",
         "--convert-to",
         "csv:Text - txt - csv (StarCalc):44,34,76,1,,0,false,true,false,false,false,1",
         "--outdir",
-        str(tmp_path / "out"),
-        str(new),
+        str(folder / "out"),
+        *map(str, files),
     ]
-    done = subprocess.run(command, timeout=120, capture_output=True, text=True, check=False)
+    done = subprocess.run(command, timeout=patience, capture_output=True, text=True, check=False)
     assert done.returncode == 0, done.stderr
-    lines = next((tmp_path / "out").glob("*.csv")).read_text("utf-8").splitlines()
+    return sorted((folder / "out").glob("*.csv"))
+
+
+@pytest.mark.office
+@pytest.mark.parametrize("name", ["loop.xlsx", "loop.xlsm"])
+def test_libreoffice_opens_a_written_book_with_its_new_values(name: str, tmp_path: Path) -> None:
+    old = make_rich_book(tmp_path / name)
+    book = open_book(old)
+    new = tmp_path / f"new{old.suffix}"
+    write_book(book, grown_results(book), new, recalculate_on_load=False)
+    lines = converted([new], tmp_path, 120)[0].read_text("utf-8").splitlines()
     assert lines[0].startswith("t / degC,p / bar,x NH3")
     assert lines[1].split(",")[2:4] == ["150%", "1.5"]
     assert [line.split(",")[7] for line in lines[1:6]] == ["2", "3", "4", "5", "6"]
+
+
+@pytest.mark.office
+@pytest.mark.slow
+@pytest.mark.skipif(not FILES, reason="no corpus of workbooks beside the project")
+def test_libreoffice_opens_every_book_of_the_corpus_after_writing(tmp_path: Path) -> None:
+    (tmp_path / "new").mkdir()
+    written = []
+    for number, path in enumerate(FILES):
+        try:
+            book = open_book(path)
+        except BookError:
+            continue
+        results: Results = {s.index: SheetResults(dict.fromkeys(s.formulas, 0.125)) for s in book.sheets}
+        written.append(write_book(book, results, tmp_path / "new" / f"book{number}.xlsx").path)
+    opened = {path.name.split(".")[0].split("-")[0] for path in converted(written, tmp_path, 900)}
+    assert {path.stem for path in written} == opened

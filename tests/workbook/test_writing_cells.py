@@ -127,6 +127,17 @@ def test_values_that_did_not_change_keep_their_bytes(make_book: BookMaker) -> No
     assert sheet_after(path, {(1, 1): 0.1, (1, 2): "a"}) == data(row)
 
 
+DYNAMIC = {
+    "links": {"m": ("sheetMetadata", "metadata.xml")},
+    "parts": {
+        "xl/metadata.xml": '<metadata xmlns="http://schemas.openxmlformats.org/spreadsheetml/2006/main">'
+        '<metadataTypes><metadataType name="XLDAPR"/></metadataTypes>'
+        '<futureMetadata name="XLDAPR"><bk>'
+        '<extLst><ext><x:dynamicArrayProperties xmlns:x="urn:x" fDynamic="1"/></ext></extLst></bk>'
+        "</futureMetadata>"
+        '<cellMetadata><bk><rc t="1" v="0"/></bk></cellMetadata></metadata>'
+    },
+}
 SPILL = '<c r="B2" cm="1"><f t="array" ref="B2:B3">X</f><v>1</v></c>'
 
 
@@ -139,7 +150,8 @@ def test_a_spill_that_grows_makes_cells_and_rows_in_order(make_book: BookMaker) 
                 '<row r="4" s="5" customFormat="1"><c r="A4"><v>9</v></c><c r="C4"><v>9</v></c></row>'
                 '<row r="6"><c r="B6" s="2"/></row>'
             )
-        }
+        },
+        **DYNAMIC,
     )
     areas = {(2, 2): Area(2, 2, 7, 3)}
     values: dict[Place, Value] = {(row, 2): float(row) for row in range(2, 8)}
@@ -158,7 +170,9 @@ def test_a_spill_that_grows_makes_cells_and_rows_in_order(make_book: BookMaker) 
 
 
 def test_a_spill_that_shrinks_empties_the_cells_it_leaves(make_book: BookMaker) -> None:
-    path = make_book({"Loop": data(f'<row r="2">{SPILL}</row><row r="3"><c r="B3" s="1"><v>2</v></c></row>')})
+    path = make_book(
+        {"Loop": data(f'<row r="2">{SPILL}</row><row r="3"><c r="B3" s="1"><v>2</v></c></row>')}, **DYNAMIC
+    )
     assert sheet_after(path, {(2, 2): NA}, {(2, 2): Area(2, 2, 2, 2)}) == data(
         '<row r="2"><c r="B2" cm="1" t="e"><f t="array" ref="B2">X</f><v>#N/A</v></c></row>'
         '<row r="3"><c r="B3" s="1"/></row>'
@@ -166,7 +180,9 @@ def test_a_spill_that_shrinks_empties_the_cells_it_leaves(make_book: BookMaker) 
 
 
 def test_only_the_area_of_an_array_formula_may_change(make_book: BookMaker) -> None:
-    path = make_book({"Loop": data(f'<row r="2">{SPILL}</row><row r="3"><c r="B3"><v>2</v></c></row>')})
+    path = make_book(
+        {"Loop": data(f'<row r="2">{SPILL}</row><row r="3"><c r="B3"><v>2</v></c></row>')}, **DYNAMIC
+    )
     assert sheet_after(path, {(2, 2): 1.0, (2, 3): 8.0}, {(2, 2): Area(2, 2, 3, 3)}) == data(
         '<row r="2"><c r="B2" cm="1"><f t="array" ref="B2:C3">X</f><v>1</v></c><c r="C2"><v>8</v></c></row>'
         '<row r="3"><c r="B3"><v>2</v></c></row>'
@@ -200,6 +216,7 @@ def test_an_input_replaces_a_constant_and_keeps_its_format(make_book: BookMaker)
         (SheetResults({(4, 2): 1.0}, {(2, 2): Area(2, 2, 4, 2)}), "B4 is a constant"),
         (SheetResults({}, {(1, 1): Area(1, 1, 2, 1)}), "A1 holds no array formula"),
         (SheetResults({}, {(2, 2): Area(3, 2, 4, 2)}), "begins elsewhere"),
+        (SheetResults({}, {(4, 3): Area(4, 3, 5, 4)}), "C4 holds an array formula that cannot spill"),
         (SheetResults(inputs={(2, 2): 1.0}), "B2 is computed"),
     ],
 )
@@ -210,9 +227,10 @@ def test_results_that_belong_nowhere_are_refused_and_nothing_is_written(
         {
             "Loop": data(
                 f'<row r="1"><c r="A1"><v>1</v></c></row><row r="2">{SPILL}</row>'
-                '<row r="4"><c r="B4"><v>7</v></c></row>'
+                '<row r="4"><c r="B4"><v>7</v></c><c r="C4"><f t="array" ref="C4:D4">X</f></c></row>'
             )
-        }
+        },
+        **DYNAMIC,
     )
     before = sorted(path.parent.iterdir())
     with pytest.raises(InputError, match=words):
@@ -230,7 +248,7 @@ def test_results_that_belong_nowhere_are_refused_and_nothing_is_written(
     ],
 )
 def test_a_sheet_out_of_order_is_refused_rather_than_made_worse(make_book: BookMaker, rows: str) -> None:
-    path = make_book({"Loop": data(rows)})
+    path = make_book({"Loop": data(rows)}, **DYNAMIC)
     book = open_book(path)
     results = SheetResults({(2, 2): 5.0, (2, 3): 1.0, (4, 2): 1.0}, {(2, 2): Area(2, 2, 4, 3)})
     with pytest.raises(DamagedBookError, match=r"loop\.xlsx sheet 'Loop'"):

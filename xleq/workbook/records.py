@@ -394,7 +394,7 @@ class SheetResults:
         (row, column) → fresh value of a formula cell, or of a cell that an array formula fills. Only
         those whose value differs from the stored one are rewritten. `BLANK` empties the cached value.
     areas : dict
-        (row, column) of an array formula → the area it fills now, where that differs from the file.
+        (row, column) of a dynamic-array formula → the area it fills now, where that differs from the file.
         Cells of its old area that it no longer fills are emptied; they need no entry in `values`.
     inputs : dict
         (row, column) → constant to put in place of a constant or a blank. A formula there is refused.

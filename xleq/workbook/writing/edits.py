@@ -75,6 +75,9 @@ def _add_children(edits: dict[Place, Edit], sheet: Sheet, results: SheetResults)
     for place, area in results.areas.items():
         if place not in old or sheet.formulas[place].kind is not FormulaKind.ARRAY:
             raise InputError(f"{_where(sheet, place)} holds no array formula")
+        if not sheet.formulas[place].dynamic and area != old[place]:
+            # its cells are fixed, and each of them stands in the calculation chain
+            raise InputError(f"{_where(sheet, place)} holds an array formula that cannot spill")
         if (area.top, area.left) != place:
             raise InputError(f"{_where(sheet, place)} cannot fill an area that begins elsewhere")
         if area != old[place]:

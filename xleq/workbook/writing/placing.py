@@ -61,7 +61,7 @@ def place(path: Path, fill: Callable[[IO[bytes]], None], model: Path, keep: bool
             raise LockedBookError(f"{path} is read-only; nothing was changed")
         _remove_strays(path)
         with _temporary(path) as (file, temporary):
-            _keep_permissions(file, path if path.exists() else model)
+            _keep_permissions(file, path, model)
             fill(file)
             file.flush()
             os.fsync(file.fileno())
@@ -133,12 +133,15 @@ def _literal(name: str) -> str:
     return "".join(f"[{c}]" if c in "*?[" else c for c in name)
 
 
-def _keep_permissions(file: IO[bytes], model: Path) -> None:
-    status = model.stat()
+def _keep_permissions(file: IO[bytes], path: Path, model: Path) -> None:
+    """Those of the file that is replaced; a new file has its model's, and its owner may write it."""
+    new = not path.exists()
+    status = (model if new else path).stat()
     if hasattr(os, "fchmod"):
-        with suppress(PermissionError):
-            os.fchown(file.fileno(), status.st_uid, status.st_gid)
-        os.fchmod(file.fileno(), stat.S_IMODE(status.st_mode) & _MODE)
+        if not new:
+            with suppress(PermissionError):
+                os.fchown(file.fileno(), status.st_uid, status.st_gid)
+        os.fchmod(file.fileno(), (stat.S_IMODE(status.st_mode) & _MODE) | (stat.S_IWUSR if new else 0))
 
 
 def _back_up(path: Path) -> Path:
