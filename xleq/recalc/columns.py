@@ -124,7 +124,7 @@ class View(Array):
         self._numbers = None
         self._kinds = None
         self._index = None
-        self._runs = None
+        self._notes = None
         self._codes = None
         self._span = None
         self._words = None

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
-from typing import TYPE_CHECKING, Final, NamedTuple, TypeAlias
+from typing import TYPE_CHECKING, Any, Final, NamedTuple, TypeAlias, TypeVar
 
 from xleq.cells import BLANK, CellError, Grid, Missing, Value
 from xleq.recalc.lexicon import Lexicon
@@ -28,6 +28,8 @@ _KIND_OF: Final[dict[type, int]] = {
 
 
 _NAN: Final = float("nan")
+
+_T = TypeVar("_T")
 
 
 class Fail(Exception):  # noqa: N818 - not a program error: it carries a cell error out of nested calls
@@ -54,7 +56,7 @@ class Array:
         "_index",
         "_kinds",
         "_numbers",
-        "_runs",
+        "_notes",
         "_span",
         "_words",
         "height",
@@ -69,7 +71,7 @@ class Array:
         self._kinds: NDArray[np.uint8] | None = None
         self._index: dict[object, int] | None = None
         self._words: tuple[NDArray[np.int32], Lexicon] | None = None
-        self._runs: dict[int, tuple[list[int], list[Value]]] | None = None
+        self._notes: dict[str, Any] | None = None
         self._codes: NDArray[np.int64] | None = None
         self._span: tuple[int, int] | None = None
 
@@ -192,15 +194,13 @@ class Array:
             self._words = numbers.reshape(self.height, self.width), lexicon
         return self._words
 
-    def run(self, kind: int) -> tuple[list[int], list[Value]]:
-        """Positions, row by row, and values of one kind alone: what a search for that kind runs over."""
-        if self._runs is None:
-            self._runs = {}
-        found = self._runs.get(kind)
-        if found is None:
-            pairs = [(i, v) for i, v in enumerate(self.flat) if _KIND_OF.get(type(v), BLANK_KIND) == kind]
-            found = self._runs[kind] = [i for i, _ in pairs], [v for _, v in pairs]
-        return found
+    def remembered(self, name: str, make: Callable[[Array], _T]) -> _T:
+        """What `make` finds about this array, kept under a name: orders and indexes that lookups use again."""
+        if self._notes is None:
+            self._notes = {}
+        if name not in self._notes:
+            self._notes[name] = make(self)
+        return self._notes[name]  # type: ignore[no-any-return]
 
     def first_error(self) -> CellError | None:
         """The first error value, row by row, if there is one."""
@@ -247,7 +247,7 @@ class Computed(Array):
         self._numbers = None
         self._kinds = None
         self._index = None
-        self._runs = None
+        self._notes = None
         self._codes = None
         self._words = None
         kind = LOGICAL_KIND if data.dtype == bool else NUMBER_KIND

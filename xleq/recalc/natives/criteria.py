@@ -17,6 +17,7 @@ from typing import TYPE_CHECKING, Final, Literal
 from xleq.cells import BLANK, ERRORS, VALUE, CellError, Value
 from xleq.recalc.coerce import collation_key
 from xleq.recalc.operands import BLANK_KIND, TEXT_KIND, Array, Fail
+from xleq.recalc.patterns import has_wildcard, wildcard_pattern
 from xleq.recalc.texts import parse_number
 
 if TYPE_CHECKING:
@@ -100,11 +101,19 @@ class Criterion:
         """Which texts meet the criterion; each distinct text is tested once."""
         import numpy as np
 
-        index, codes, operand = array.index(), array.codes(), self.operand
-        if type(operand) is str and self.relation in ("=", "<>") and not any(c in operand for c in "*?~"):
-            return np.equal(codes, index.get(operand.lower(), -1))
-        test = self.text
-        return np.isin(codes, [place for key, place in index.items() if type(key) is str and test(key)])
+        (words, lexicon), operand = array.words(), self.operand
+        met: NDArray[np.bool_]
+        if type(operand) is float:
+            met = np.zeros(words.shape, bool)
+            for number in lexicon.reading_as(operand):
+                met |= words == number
+            return met
+        if type(operand) is str and self.relation in ("=", "<>") and not has_wildcard(operand):
+            number = lexicon.find(operand)
+            met = words == (number if number >= 0 else -2)
+            return met
+        answers = lexicon.meeting((self.relation, operand), self.text)
+        return (words >= 0) & answers[words]
 
     def _plainly_met(self, value: Value) -> bool:
         met = self.met_by(value)
@@ -133,30 +142,9 @@ def _never(_text: str) -> bool:
     return False
 
 
-def wildcard_pattern(text: str) -> re.Pattern[str]:
-    """Regular expression of a text with ``*``, ``?`` and ``~``, for whole texts without case.
-
-    Examples
-    --------
-    >>> bool(wildcard_pattern("n?~*").fullmatch("N2*")), bool(wildcard_pattern("*ane").fullmatch("Methane"))
-    (True, True)
-    """
-    parts: list[str] = []
-    i = 0
-    while i < len(text):
-        c = text[i]
-        if c == "~" and i + 1 < len(text) and text[i + 1] in "*?~":
-            i += 1
-            parts.append(re.escape(text[i]))
-        else:
-            parts.append({"*": ".*", "?": "."}.get(c) or re.escape(c))
-        i += 1
-    return re.compile("".join(parts), re.IGNORECASE | re.DOTALL)
-
-
 def text_test(text: str) -> Callable[[str], bool]:
     """Test whether a text equals this one, without case and with wildcards."""
-    if any(c in text for c in "*?~"):
+    if has_wildcard(text):
         pattern = wildcard_pattern(text)
         return lambda other: pattern.fullmatch(other) is not None
     wanted = text.lower()
