@@ -55,8 +55,8 @@ class Array:
         "_flat",
         "_index",
         "_kinds",
-        "_numbers",
         "_notes",
+        "_numbers",
         "_span",
         "_words",
         "height",
@@ -195,7 +195,7 @@ class Array:
         return self._words
 
     def remembered(self, name: str, make: Callable[[Array], _T]) -> _T:
-        """What `make` finds about this array, kept under a name: orders and indexes that lookups use again."""
+        """What `make` finds about this array, kept under a name: orders and indexes for lookups."""
         if self._notes is None:
             self._notes = {}
         if name not in self._notes:

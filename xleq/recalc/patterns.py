@@ -26,6 +26,16 @@ def wildcard_pattern(text: str) -> re.Pattern[str]:
     >>> bool(wildcard_pattern("n?3").fullmatch("NH3")), bool(wildcard_pattern("~*").fullmatch("a"))
     (True, False)
     """
+    return re.compile(_translated(text, "."), re.IGNORECASE | re.DOTALL)
+
+
+@lru_cache(maxsize=1024)
+def line_pattern(text: str, separator: str) -> re.Pattern[str]:
+    """Regular expression that finds a text with wildcards as a whole between two separators."""
+    return re.compile(f"{separator}{_translated(text, f'[^{separator}]')}(?={separator})")
+
+
+def _translated(text: str, any_character: str) -> str:
     parts: list[str] = []
     at = 0
     while at < len(text):
@@ -33,9 +43,9 @@ def wildcard_pattern(text: str) -> re.Pattern[str]:
         if c == "~":  # takes any character literally; at the end it stands for nothing
             at += 1
             parts.append(re.escape(text[at : at + 1]))
-        else:
-            parts.append({"*": ".*", "?": "."}.get(c) or re.escape(c))
+        elif c != "*":
+            parts.append(any_character if c == "?" else re.escape(c))
+        elif not parts or parts[-1] != any_character + "*":
+            parts.append(any_character + "*")
         at += 1
-    # Runs of stars mean the same as one and would only cost time.
-    joined = re.sub(r"(?:\.\*)+", ".*", "".join(parts))
-    return re.compile(joined, re.IGNORECASE | re.DOTALL)
+    return "".join(parts)

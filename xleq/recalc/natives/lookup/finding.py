@@ -7,14 +7,13 @@ give the same answer; only values of the kind that is looked for take part.
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterable, Sequence
-from typing import Final
+from bisect import bisect_left, bisect_right
+from collections.abc import Callable, Sequence
+from typing import Any, Final
 
 from xleq.cells import BLANK, VALUE, CellError, Value
-from xleq.recalc.coerce import compare
+from xleq.recalc.coerce import collation_key, compare, near
 from xleq.recalc.operands import (
-    BLANK_KIND,
-    ERROR_KIND,
     LOGICAL_KIND,
     NUMBER_KIND,
     TEXT_KIND,
@@ -22,7 +21,7 @@ from xleq.recalc.operands import (
     Fail,
     lookup_key,
 )
-from xleq.recalc.patterns import has_wildcard, wildcard_pattern
+from xleq.recalc.patterns import has_wildcard, line_pattern, wildcard_pattern
 
 _KIND: Final[dict[type, int]] = {float: NUMBER_KIND, str: TEXT_KIND, bool: LOGICAL_KIND}
 #: Longest text that can be looked for.
@@ -30,50 +29,83 @@ _LONGEST: Final = 255
 #: So many equal values in a row are walked one by one.
 _NEIGHBOURS: Final = 32
 
+#: Positions of values, and the values or keys at them.
+Run = tuple[list[int], list[Value]]
+Keyed = tuple[list[int], list[tuple[int, Any]]]
 
-def kind_of(value: Value) -> int:
-    """Kind of a value that is neither blank nor an error."""
-    return _KIND[type(value)]
+
+def _run(values: Array, wanted: Value) -> Run:
+    """Positions and values of the kind of the wanted one."""
+    kind = _KIND[type(wanted)]
+
+    def make(array: Array) -> Run:
+        pairs = [(i, v) for i, v in enumerate(array.flat) if _KIND.get(type(v)) == kind]
+        return [i for i, _ in pairs], [v for _, v in pairs]
+
+    return values.remembered(f"run {kind}", make)
+
+
+def _key(value: Value) -> tuple[int, Any]:
+    """Key in the order of all kinds: numbers, texts, logicals."""
+    return _KIND[type(value)], collation_key(value) if isinstance(value, str) else value
+
+
+def _keyed(values: Array) -> Keyed:
+    """Positions and keys of all values that are neither blank nor errors, as they stand."""
+    places = [i for i, v in enumerate(values.flat) if type(v) in _KIND]
+    return places, [_key(values.flat[i]) for i in places]
+
+
+def _keyed_backwards(values: Array) -> Keyed:
+    places, keys = values.remembered("keyed", _keyed)
+    return places[::-1], keys[::-1]
+
+
+def _sorted(values: Array) -> Keyed:
+    """The same in order; equal values by their positions."""
+    places, keys = values.remembered("keyed", _keyed)
+    order = sorted(range(len(keys)), key=keys.__getitem__)
+    return [places[i] for i in order], [keys[i] for i in order]
+
+
+def _last_index(values: Array) -> dict[object, int]:
+    return {lookup_key(v): i for i, v in enumerate(values.flat)}
+
+
+def _joined(values: Array) -> str:
+    """All texts without case, each between two separators that no text holds."""
+    return _SEPARATOR + _SEPARATOR.join(v.lower() for v in _run(values, "")[1]) + _SEPARATOR  # type: ignore[union-attr]
+
+
+_SEPARATOR: Final = "\0"
 
 
 def exact(values: Array, wanted: Value, wildcards: bool) -> int | None:
     """First position of a value, text without case."""
     if isinstance(wanted, str) and wildcards and has_wildcard(wanted):
-        return _matching(values, wildcard_pattern(wanted), range(len(values.flat)))
+        joined = values.remembered("joined", _joined)
+        match = line_pattern(wanted.lower(), _SEPARATOR).search(joined)
+        return _run(values, "")[0][joined.count(_SEPARATOR, 0, match.start())] if match else None
     return values.index().get(lookup_key(wanted))
 
 
 def last_exact(values: Array, wanted: Value, wildcards: bool) -> int | None:
     """Last position of a value, text without case."""
-    flat = values.flat
-    backwards = range(len(flat) - 1, -1, -1)
     if isinstance(wanted, str) and wildcards and has_wildcard(wanted):
-        return _matching(values, wildcard_pattern(wanted), backwards)
-    key = lookup_key(wanted)
-    if key not in values.index():
-        return None
-    return next(i for i in backwards if lookup_key(flat[i]) == key)
+        return _last_match(values, wildcard_pattern(wanted).fullmatch)
+    return values.remembered("last", _last_index).get(lookup_key(wanted))
 
 
 def matching(values: Array, pattern: re.Pattern[str], backwards: bool) -> int | None:
     """First, or last, position of a text in which a regular expression is found."""
-    places = range(len(values.flat))
-    return _matching(values, pattern, reversed(places) if backwards else places, pattern.search)
+    if backwards:
+        return _last_match(values, pattern.search)
+    return next((i for i, v in zip(*_run(values, ""), strict=True) if pattern.search(str(v))), None)
 
 
-def _matching(
-    values: Array,
-    pattern: re.Pattern[str],
-    places: Iterable[int],
-    test: Callable[[str], object] | None = None,
-) -> int | None:
-    flat = values.flat
-    test = test or pattern.fullmatch
-    for i in places:
-        v = flat[i]
-        if type(v) is str and test(v):
-            return i
-    return None
+def _last_match(values: Array, test: Callable[[str], object]) -> int | None:
+    places, texts = _run(values, "")
+    return next((places[i] for i in range(len(texts) - 1, -1, -1) if test(str(texts[i]))), None)
 
 
 def check_length(wanted: Value) -> None:
@@ -84,14 +116,14 @@ def check_length(wanted: Value) -> None:
 
 def last_at_most(values: Array, wanted: Value) -> int | None:
     """By bisection in ascending order: the last value that is not above the wanted one."""
-    places, run = values.run(kind_of(wanted))
+    places, run = _run(values, wanted)
     at = _bisected(run, wanted, descending=False)
     return places[at] if at >= 0 else None
 
 
 def last_at_least(values: Array, wanted: Value) -> int | None:
     """By bisection in descending order: the last value that is not below the wanted one."""
-    places, run = values.run(kind_of(wanted))
+    places, run = _run(values, wanted)
     at = _bisected(run, wanted, descending=True)
     return places[at] if at >= 0 else None
 
@@ -121,38 +153,33 @@ def _bisected(run: Sequence[Value], wanted: Value, descending: bool) -> int:
     return low
 
 
+def _equal_from(keys: Sequence[tuple[int, Any]], key: tuple[int, Any]) -> tuple[int, bool]:
+    """First place in an order that is not below a key, and whether the key is there; to 15 digits."""
+    at = bisect_left(keys, key)
+    while at and _same(keys[at - 1], key):
+        at -= 1
+    return at, at < len(keys) and _same(keys[at], key)
+
+
+def _same(a: tuple[int, Any], b: tuple[int, Any]) -> bool:
+    return a == b or (a[0] == b[0] == NUMBER_KIND and near(a[1], b[1]))
+
+
 def nearest(values: Array, wanted: Value, larger: bool, backwards: bool) -> int | None:
     """Position of the wanted value or, if there is none, of the next smaller or the next larger one.
 
     Numbers come before texts before logicals; blanks and errors don't take part.
     """
-    flat = values.flat
-    if isinstance(wanted, float) and not larger and not backwards and _all_numbers(values):
-        return _next_smaller_number(values, wanted)
-    best: int | None = None
-    for i in range(len(flat) - 1, -1, -1) if backwards else range(len(flat)):
-        v = flat[i]
-        if v is BLANK or isinstance(v, CellError):
-            continue
-        order = compare(v, wanted)
-        if order == 0:
-            return i
-        if (order > 0) == larger and (best is None or compare(v, flat[best]) == (-1 if larger else 1)):
-            best = i
-    return best
-
-
-def _all_numbers(values: Array) -> bool:
-    return bool((values.kinds == NUMBER_KIND).all())
-
-
-def _next_smaller_number(values: Array, wanted: float) -> int | None:
-    import numpy as np
-
-    numbers = values.numbers.ravel()
-    below = np.where(numbers <= wanted, numbers, -np.inf)
-    at = int(below.argmax())
-    return at if numbers[at] <= wanted else None
+    places, keys = values.remembered("sorted", _sorted)
+    at, found = _equal_from(keys, _key(wanted))
+    if not found and not larger:
+        at -= 1
+    if not 0 <= at < len(keys):
+        return None
+    # Of equal values the order holds the first one first.
+    if backwards:
+        return places[bisect_right(keys, keys[at]) - 1]
+    return places[bisect_left(keys, keys[at])]
 
 
 def sorted_position(values: Array, wanted: Value, nearer: int, descending: bool) -> int | None:
@@ -160,25 +187,17 @@ def sorted_position(values: Array, wanted: Value, nearer: int, descending: bool)
 
     Blanks count as after everything; errors don't take part.
     """
-    flat = values.flat
     if wanted is BLANK:
-        return next((i for i, v in enumerate(flat) if v is BLANK), None)
-    kinds = values.kinds.ravel()
-    places = [int(i) for i in ((kinds != BLANK_KIND) & (kinds != ERROR_KIND)).nonzero()[0]]
+        return values.index().get(lookup_key(BLANK))
     if descending:
-        places.reverse()
-    low, high = -1, len(places)
-    while high - low > 1:
-        middle = (low + high) // 2
-        if compare(flat[places[middle]], wanted) < 0:
-            low = middle
-        else:
-            high = middle
-    if high < len(places) and compare(flat[places[high]], wanted) == 0:
-        return places[high]
-    if nearer == 0:
-        return None
-    at = low if nearer < 0 else high
+        places, keys = values.remembered("backwards", _keyed_backwards)
+    else:
+        places, keys = values.remembered("keyed", _keyed)
+    at, found = _equal_from(keys, _key(wanted))
+    if not found:
+        if nearer == 0:
+            return None
+        at -= nearer < 0
     return places[at] if 0 <= at < len(places) else None
 
 
