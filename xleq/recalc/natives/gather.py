@@ -7,7 +7,7 @@ for the functions whose names end in A, also logicals as 1 and 0 and text as 0. 
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from functools import wraps
 from typing import TYPE_CHECKING, Any, Final, TypeVar, cast
 
@@ -66,7 +66,6 @@ def check_errors(array: Array) -> None:
 def number_vector(array: Array) -> NDArray[np.float64]:
     """Numbers of an array row by row, as a vector [n_numbers]; not to be written to."""
     check_errors(array)
-
     if array.span == (NUMBER_KIND, NUMBER_KIND):
         return array.numbers.ravel()
     numbers: NDArray[np.float64] = array.numbers[array.kinds == NUMBER_KIND]
@@ -105,6 +104,23 @@ def numbers_of(arguments: Iterable[Argument], *, logicals: bool = True) -> list[
         else:
             numbers.append(direct_number(argument, logicals=logicals))
     return numbers
+
+
+def vector_of(arguments: Sequence[Argument]) -> list[float] | NDArray[np.float64]:
+    """All numbers of list arguments: a vector [n_numbers] where one large array is given, else a list."""
+    if len(arguments) == 1:
+        array = arguments[0]
+        if isinstance(array, Array) and array.height * array.width > SMALL:
+            return number_vector(array)
+    return numbers_of(arguments)
+
+
+def places_in(numbers: NDArray[np.float64], places: Sequence[int]) -> list[float]:
+    """What would stand at some places, from 0, if the numbers were in order."""
+    import numpy as np
+
+    parted = np.partition(numbers, list(places))
+    return [float(parted[i]) for i in places]
 
 
 def numbers_of_a(arguments: Iterable[Argument]) -> list[float]:

@@ -14,8 +14,11 @@ from xleq.recalc.natives.gather import (
     number_vector,
     numbers_of,
     numbers_of_a,
+    places_in,
     ratio,
+    vector_of,
 )
+from xleq.recalc.natives.statistics.spread import Numbers
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import BLANK_KIND, NUMBER_KIND, Argument, Array, Fail
 from xleq.recalc.texts import parse_number
@@ -116,18 +119,22 @@ def mina(*arguments: Argument) -> float:
     return min(numbers_of_a(arguments), default=0.0)
 
 
-def median_of(numbers: list[float]) -> float:
+def median_of(numbers: Numbers) -> float:
     """Middle of the sorted numbers; #NUM! for none."""
-    if not numbers:
+    if len(numbers) == 0:
         raise Fail(NUM)
-    ordered, half = sorted(numbers), len(numbers) // 2
+    half = len(numbers) // 2
+    if not isinstance(numbers, list):
+        low, high = places_in(numbers, [(len(numbers) - 1) // 2, half])
+        return (low + high) / 2.0
+    ordered = sorted(numbers)
     return ordered[half] if len(numbers) % 2 else (ordered[half - 1] + ordered[half]) / 2.0
 
 
 @native("MEDIAN", "list*")
 def median(*arguments: Argument) -> float:
     """Median."""
-    return median_of(numbers_of(arguments))
+    return median_of(vector_of(arguments))
 
 
 def modes_of(numbers: list[float]) -> list[float]:

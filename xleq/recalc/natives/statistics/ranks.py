@@ -8,34 +8,44 @@ from bisect import bisect_left
 from xleq.cells import DIV0, NA, NUM, VALUE
 from xleq.recalc.context import Context
 from xleq.recalc.natives.arithmetic.rounding import floor15
-from xleq.recalc.natives.gather import array_numbers, numbers_of
+from xleq.recalc.natives.gather import SMALL, array_numbers, number_vector, places_in, vector_of
+from xleq.recalc.natives.statistics.spread import Numbers
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Array, Fail, Ref
 
 
-def nth(numbers: list[float], k: float, *, largest: bool) -> float:
+def nth(numbers: Numbers, k: float, *, largest: bool) -> float:
     """The kth largest or smallest number, k from 1; #NUM! where there is none."""
     place = math.ceil(k)
     if not 1 <= place <= len(numbers):
         raise Fail(NUM)
+    if not isinstance(numbers, list):
+        return places_in(numbers, [len(numbers) - place if largest else place - 1])[0]
     return sorted(numbers, reverse=largest)[place - 1]
 
 
 @native("LARGE", "list number")
 def large(array: Argument, k: float) -> float:
     """Kth largest number."""
-    return nth(numbers_of([array]), k, largest=True)
+    return nth(vector_of([array]), k, largest=True)
 
 
 @native("SMALL", "list number")
 def small(array: Argument, k: float) -> float:
     """Kth smallest number."""
-    return nth(numbers_of([array]), k, largest=False)
+    return nth(vector_of([array]), k, largest=False)
 
 
 def _beaten(context: Context, x: float, ref: Ref, order: float) -> tuple[int, int]:
     """How many numbers come before x, and how many equal it."""
-    numbers = [n for array in context.read_areas(ref) for n in array_numbers(array)]
+    arrays = context.read_areas(ref)
+    if len(arrays) == 1 and arrays[0].height * arrays[0].width > SMALL:
+        vector = number_vector(arrays[0])
+        ties = int((vector == x).sum())
+        if not ties:
+            raise Fail(NA)
+        return int((vector < x if order else vector > x).sum()), ties
+    numbers = [n for array in arrays for n in array_numbers(array)]
     ties = numbers.count(x)
     if not ties:
         raise Fail(NA)
@@ -55,52 +65,55 @@ def rank_avg(context: Context, x: float, ref: Ref, order: float = 0.0) -> float:
     return before + (1.0 + ties) / 2.0
 
 
-def _at(ordered: list[float], place: float) -> float:
-    """Value at a place from 0, between neighbours in proportion."""
-    below = math.floor(place + 1e-13)
-    rest = max(place - below, 0.0)
-    if below + 1 >= len(ordered) or rest == 0.0:
-        return ordered[min(below, len(ordered) - 1)]
-    return ordered[below] + rest * (ordered[below + 1] - ordered[below])
+def _at(numbers: Numbers, place: float) -> float:
+    """Value at a place from 0 of the numbers in order, between neighbours in proportion."""
+    below = min(math.floor(place + 1e-13), len(numbers) - 1)
+    above = min(below + 1, len(numbers) - 1)
+    if isinstance(numbers, list):
+        ordered = sorted(numbers)
+        low, high = ordered[below], ordered[above]
+    else:
+        low, high = places_in(numbers, [below, above])
+    return low + max(place - below, 0.0) * (high - low)
 
 
-def percentile_of(numbers: list[float], share: float) -> float:
+def percentile_of(numbers: Numbers, share: float) -> float:
     """Value below which a share of the numbers lies, ends included; #NUM! for none."""
-    if not numbers or not 0.0 <= share <= 1.0:
+    if len(numbers) == 0 or not 0.0 <= share <= 1.0:
         raise Fail(NUM)
-    return _at(sorted(numbers), share * (len(numbers) - 1))
+    return _at(numbers, share * (len(numbers) - 1))
 
 
-def percentile_exc_of(numbers: list[float], share: float) -> float:
+def percentile_exc_of(numbers: Numbers, share: float) -> float:
     """Value below which a share of the numbers lies, ends excluded; #NUM! where that is outside them."""
     place = share * (len(numbers) + 1)
     if not 0.0 < share < 1.0 or not 1.0 - 1e-12 <= place <= len(numbers) + 1e-12:
         raise Fail(NUM)
-    return _at(sorted(numbers), max(place - 1.0, 0.0))
+    return _at(numbers, max(place - 1.0, 0.0))
 
 
 @native("PERCENTILE PERCENTILE.INC", "array number")
 def percentile(array: Array, share: float) -> float:
     """Percentile, share from 0 to 1."""
-    return percentile_of(array_numbers(array), share)
+    return percentile_of(vector_of([array]), share)
 
 
 @native("PERCENTILE.EXC", "array number")
 def percentile_exc(array: Array, share: float) -> float:
     """Percentile, share between 0 and 1."""
-    return percentile_exc_of(array_numbers(array), share)
+    return percentile_exc_of(vector_of([array]), share)
 
 
 @native("QUARTILE QUARTILE.INC", "array number")
 def quartile(array: Array, quarter: float) -> float:
     """Quartile 0 to 4."""
-    return percentile_of(array_numbers(array), math.trunc(quarter) / 4.0)
+    return percentile_of(vector_of([array]), math.trunc(quarter) / 4.0)
 
 
 @native("QUARTILE.EXC", "array number")
 def quartile_exc(array: Array, quarter: float) -> float:
     """Quartile 1 to 3."""
-    return percentile_exc_of(array_numbers(array), math.trunc(quarter) / 4.0)
+    return percentile_exc_of(vector_of([array]), math.trunc(quarter) / 4.0)
 
 
 def _place_of(ordered: list[float], x: float) -> float:

@@ -3,20 +3,31 @@
 from __future__ import annotations
 
 import math
+from typing import TYPE_CHECKING, TypeAlias
 
 from xleq.cells import DIV0, NUM
-from xleq.recalc.natives.gather import finite, guarded, numbers_of, numbers_of_a, ratio
+from xleq.recalc.natives.gather import finite, guarded, numbers_of, numbers_of_a, ratio, vector_of
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Fail
 
+if TYPE_CHECKING:
+    import numpy as np
+    from numpy.typing import NDArray
 
-def squares_about_mean(numbers: list[float]) -> float:
-    """Sum of the squared deviations from the mean; the list is not empty."""
+
+Numbers: TypeAlias = "list[float] | NDArray[np.float64]"
+
+
+def squares_about_mean(numbers: Numbers) -> float:
+    """Sum of the squared deviations from the mean; there is at least one number."""
+    if not isinstance(numbers, list):
+        deviations = numbers - numbers.sum() / len(numbers)
+        return float((deviations * deviations).sum())
     mean = sum(numbers) / len(numbers)
     return sum((x - mean) * (x - mean) for x in numbers)
 
 
-def variance(numbers: list[float], freedom: int) -> float:
+def variance(numbers: Numbers, freedom: int) -> float:
     """Squared deviations over n - freedom; #DIV/0! where that is not positive."""
     if len(numbers) <= freedom:
         raise Fail(DIV0)
@@ -27,14 +38,14 @@ def variance(numbers: list[float], freedom: int) -> float:
 @guarded
 def var(*arguments: Argument) -> float:
     """Variance of a sample."""
-    return variance(numbers_of(arguments), 1)
+    return variance(vector_of(arguments), 1)
 
 
 @native("VARP VAR.P", "list list*")
 @guarded
 def varp(*arguments: Argument) -> float:
     """Variance of a population."""
-    return variance(numbers_of(arguments), 0)
+    return variance(vector_of(arguments), 0)
 
 
 @native("VARA", "list list*")
@@ -55,14 +66,14 @@ def varpa(*arguments: Argument) -> float:
 @guarded
 def stdev(*arguments: Argument) -> float:
     """Standard deviation of a sample."""
-    return math.sqrt(variance(numbers_of(arguments), 1))
+    return math.sqrt(variance(vector_of(arguments), 1))
 
 
 @native("STDEVP STDEV.P", "list list*")
 @guarded
 def stdevp(*arguments: Argument) -> float:
     """Standard deviation of a population."""
-    return math.sqrt(variance(numbers_of(arguments), 0))
+    return math.sqrt(variance(vector_of(arguments), 0))
 
 
 @native("STDEVA", "list list*")
