@@ -80,12 +80,11 @@ def year_fraction(start: int, end: int, basis: int, date_1904: bool = False) -> 
     first, last = min(a[2], 30), b[2]
     if basis == 4:
         last = min(last, 30)
-    elif _ends_february(a):
-        if _ends_february(b):
-            last = 30
-        first = 30
-    if last == 31 and first == 30:
+    elif first == 30 and last == 31:
         last = 30
+    elif _ends_february(a):  # a last of February does not shorten a 31st
+        first = 30
+        last = 30 if _ends_february(b) else last
     return _span_360(a, b, first, last) / 360.0
 
 
