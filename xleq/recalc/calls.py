@@ -8,13 +8,13 @@ from functools import lru_cache, partial
 from typing import TYPE_CHECKING, Any, Final
 
 from xleq.cells import BLANK, DIV0, MISSING, NA, NUM, VALUE, Blank, CellError, Missing, Value
-from xleq.recalc.coerce import to_logical, to_number, to_text
+from xleq.recalc.coerce import NOT_A_VALUE, to_logical, to_number, to_text
 from xleq.recalc.columns import VOLATILE
 from xleq.recalc.context import Context
 from xleq.recalc.natives.table import SCALAR_KINDS, Native, Parameter
 from xleq.recalc.operands import Array, Computed, Fail, Operand, Ref
 from xleq.recalc.operators import stretched
-from xleq.recalc.references import Run, block, contents
+from xleq.recalc.references import Run, block, constant, contents
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -71,10 +71,16 @@ def _logical(value: Operand) -> bool:
 def _value(value: Operand) -> Operand:
     if type(value) is CellError:
         raise Fail(value)
+    if type(value) not in _PLAIN:
+        raise Fail(NOT_A_VALUE)
     return value
 
 
 def _any(value: Operand) -> Operand:
+    return value if type(value) in _PLAIN else NOT_A_VALUE
+
+
+def _as_it_is(value: Operand) -> Operand:
     return value
 
 
@@ -142,6 +148,8 @@ def prepared(parameter: Parameter, run: Run) -> Callable[[Context], Any]:
 def native_call(native: Native, arguments: Sequence[Callable[[Context], Any] | Missing]) -> Run:
     """A call with its arguments compiled and prepared; MISSING stands for one left empty."""
     kinds = [native.parameter(i).kind for i in range(len(arguments))]
+    if any(isinstance(a, Missing) and k == "range" for a, k in zip(arguments, kinds, strict=True)):
+        return constant(CellError("#VALUE!", f"{native.name} wants a reference"))
     fillers = [omitted(native, i) if a is MISSING else None for i, a in enumerate(arguments)]
     runs = [
         a if not isinstance(a, Missing) else (lambda at, v=v: v)
@@ -149,7 +157,7 @@ def native_call(native: Native, arguments: Sequence[Callable[[Context], Any] | M
     ]
     scalar = [k in SCALAR_KINDS for k in kinds]
     converters = [
-        _any if isinstance(a, Missing) else CONVERTERS.get(k, _any)
+        _as_it_is if isinstance(a, Missing) else CONVERTERS.get(k, _as_it_is)
         for a, k in zip(arguments, kinds, strict=True)
     ]
     numeric = bool(kinds) and all(k == "number" for k in kinds)

@@ -9,7 +9,8 @@ from xleq.recalc.texts import number_text, parse_number
 
 #: Order of punctuation in the spreadsheet's collation; hyphen and apostrophe count least.
 _PUNCTUATION: Final = "'- !\"#$%&()*,./:;?@[\\]^_`{|}~+<=>"
-_NOT_A_VALUE: Final = CellError("#VALUE!", "a function stands where a value is wanted")
+#: What a function's value is where a cell value is wanted.
+NOT_A_VALUE: Final = CellError("#VALUE!", "a function stands where a value is wanted")
 _COLLATION: Final = str.maketrans({c: chr(1 + i) for i, c in enumerate(_PUNCTUATION)})
 
 
@@ -29,7 +30,7 @@ def to_number(value: Value) -> float | CellError:
     if kind is str:
         number = parse_number(value)  # type: ignore[arg-type]
         return CellError("#VALUE!", f"{_short(str(value))} is not a number") if number is None else number
-    return 0.0 if kind is Blank else _NOT_A_VALUE
+    return 0.0 if kind is Blank else NOT_A_VALUE
 
 
 def to_text(value: Value) -> str | CellError:
@@ -47,7 +48,7 @@ def to_text(value: Value) -> str | CellError:
         return number_text(value)
     if kind is bool:
         return "TRUE" if value else "FALSE"
-    return "" if kind is Blank else _NOT_A_VALUE
+    return "" if kind is Blank else NOT_A_VALUE
 
 
 def to_logical(value: Value) -> bool | CellError:
@@ -68,7 +69,7 @@ def to_logical(value: Value) -> bool | CellError:
         if word in ("TRUE", "FALSE"):
             return word == "TRUE"
         return CellError("#VALUE!", f"{_short(str(value))} is neither TRUE nor FALSE")
-    return False if kind is Blank else _NOT_A_VALUE
+    return False if kind is Blank else NOT_A_VALUE
 
 
 def _short(text: str) -> str:

@@ -54,7 +54,7 @@ _BINDING: Final = {
     "&": 20, "+": 30, "-": 30, "*": 40, "/": 40, "^": 50,
     " ": 90, ":": 100,
 }  # fmt: skip
-_PERCENT, _SIGNED, _UNION, _AT = 60, 70, 80, 85
+_SIGNED, _PERCENT, _AT = 70, 75, 85
 
 
 class _Token:

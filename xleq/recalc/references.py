@@ -6,6 +6,7 @@ from collections.abc import Callable
 from typing import TYPE_CHECKING, Final, TypeAlias
 
 from xleq.cells import BLANK, MAX_COLUMN, MAX_ROW, NULL, VALUE, CellError
+from xleq.recalc.coerce import NOT_A_VALUE
 from xleq.recalc.context import Context
 from xleq.recalc.operands import Area, Array, Operand, Ref
 
@@ -142,8 +143,9 @@ def block(at: Context, operand: Operand) -> Array:
     found = contents(at, operand)
     if isinstance(found, Array):
         return found
-    assert not isinstance(found, Ref)
-    return Array(1, 1, [found])
+    if isinstance(found, float | str | bool | CellError) or found is BLANK:
+        return Array(1, 1, [found])
+    return Array(1, 1, [NOT_A_VALUE])
 
 
 def single(at: Context, operand: Operand) -> Operand:
