@@ -169,7 +169,8 @@ def converted(files: list[Path], folder: Path, patience: float) -> list[Path]:
     user.mkdir(parents=True)
     (user / "registrymodifications.xcu").write_text(
         '<?xml version="1.0" encoding="UTF-8"?><oor:items xmlns:oor="http://openoffice.org/2001/registry" '
-        'xmlns:xs="http://www.w3.org/2001/XMLSchema"><item oor:path="/org.openoffice.Office.Calc/Formula/Load">'
+        'xmlns:xs="http://www.w3.org/2001/XMLSchema">'
+        '<item oor:path="/org.openoffice.Office.Calc/Formula/Load">'
         '<prop oor:name="OOXMLRecalcMode" oor:op="fuse"><value>1</value></prop></item></oor:items>'
     )
     command = [
@@ -180,10 +181,11 @@ def converted(files: list[Path], folder: Path, patience: float) -> list[Path]:
         "csv:Text - txt - csv (StarCalc):44,34,76,1,,0,false,true,false,false,false,1",
         "--outdir",
         str(folder / "out"),
-        *map(str, files),
     ]
-    done = subprocess.run(command, timeout=patience, capture_output=True, text=True, check=False)
-    assert done.returncode == 0, done.stderr
+    for at in range(0, len(files), 100):  # it silently leaves out what comes after some 250 arguments
+        batch = [*command, *map(str, files[at : at + 100])]
+        done = subprocess.run(batch, timeout=patience, capture_output=True, text=True, check=False)
+        assert done.returncode == 0, done.stderr
     return sorted((folder / "out").glob("*.csv"))
 
 
