@@ -1,11 +1,13 @@
 from __future__ import annotations
 
 import math
+import random
 from dataclasses import replace
 from fractions import Fraction
 
 import pytest
 
+from tests.equilibrium.single_systems import one_reaction
 from xleq.equilibrium import Problem, State, solve
 from xleq.errors import InputError, NotCertifiedError, OutOfRangeError
 
@@ -58,13 +60,27 @@ def test_a_system_without_fluid_is_refused():
         State("P", 300.0, p=0.0),
         State("P", 300.0),
         State("V", 300.0, v=0.0),
-        State("V", 300.0, v=math.inf),
         State("C", v=-1.0),
     ],
 )
 def test_a_state_that_cannot_be_is_refused(state):
     with pytest.raises(OutOfRangeError, match="must be above 0"):
         solve(replace(GOOD, state=state))
+
+
+@pytest.mark.parametrize(
+    ("change", "reason"),
+    [
+        ({"state": State("V", 300.0, v=math.inf)}, "volume is inf L: it must be from 1e-100 to 1e[+]100"),
+        ({"state": State("P", 1e9, p=1.0)}, "temperature is 1e[+]09 K: it must be from 0.001 to 1e[+]06"),
+        ({"n0": (1.0, 1e-310)}, "feed of B is 1e-310 mol: it must be 0 or from 1e-300"),
+        ({"n0": (1e200, 1.0)}, "feed of A is 1e[+]200 mol"),
+        ({"ln_k": (-2e6,)}, "ln K of reaction 1 is -2e[+]06"),
+    ],
+)
+def test_numbers_beyond_what_doubles_can_carry_are_refused(change, reason):
+    with pytest.raises(OutOfRangeError, match=reason):
+        solve(replace(GOOD, **change))
 
 
 def test_records_of_unequal_length_are_refused():
@@ -134,3 +150,27 @@ def test_pure_phases_turning_into_each_other_go_all_the_way():
     assert solve(problem).require().n == (0.0, 2.0, 1.0)
     assert solve(replace(problem, ln_k=(-2.0,))).require().n == (2.0, 0.0, 1.0)
     assert solve(replace(problem, ln_k=(0.0,))).status == "indeterminate"
+
+
+def test_the_extremes_of_what_is_accepted_give_an_answer_or_a_reason():
+    answered = 0
+    for seed in range(3000):
+        rng = random.Random(seed)
+        problem = one_reaction(seed)
+        amounts = (0.0, 1e-300, 3e-299, 1e-200, 1e-16, 1.0, 1.0 + 2.0**-52, 1e16, 1e50, 1e100)
+        n0 = tuple(rng.choice(amounts) if rng.random() < 0.5 else x for x in problem.n0)
+        if not any(n0):
+            continue
+        ln_k = rng.choice((0.0, 1e-300, 700.0, -700.0, 1e4, -1e4, 1e6, -1e6, 1.0, rng.gauss(0.0, 50.0)))
+        t, p, v = (
+            rng.choice((1e-3, 300.0, 1e6)),
+            rng.choice((1e-100, 1.0, 1e100)),
+            rng.choice((1e-100, 1e100)),
+        )
+        state = replace(problem.state, t=t, p=p, v=v)
+        solution = solve(replace(problem, n0=n0, ln_k=(ln_k,), state=state))
+        assert solution.iterations < 200
+        assert solution.certificate.ok or solution.certificate.reason
+        assert solution.status != "indeterminate" or not solution.certificate.ok
+        answered += solution.certificate.ok
+    assert answered > 2900

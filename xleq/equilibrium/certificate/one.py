@@ -17,6 +17,9 @@ from xleq.equilibrium.certificate.verdict import (
 )
 from xleq.equilibrium.problem import Problem
 
+#: Why a composition is refused where the affinity is zero and stays so.
+INDIFFERENT = "any extent would do: the affinity is the same at each"
+
 
 def certify_one(problem: Problem, n: Sequence[float]) -> Verdict:
     """Verdict on amounts that are numbers, at least 0.
@@ -109,7 +112,7 @@ def _at_equilibrium(problem: Problem, nu: Sequence[float], n: Sequence[float]) -
     floor = ROUNDING * size
     reach = _reach(problem, nu, n, growth / total if fraction and total else 0.0)
     if reach == math.inf:
-        return "any extent would do: the affinity is the same at each", residual, math.inf
+        return INDIFFERENT, residual, math.inf
     beyond = abs(residual) - floor
     if beyond > 0.0 and beyond * reach > ERROR_TOLERANCE:
         return _off(problem, residual), residual, beyond * reach
@@ -177,9 +180,23 @@ def _at_end(
         what = f"{names} would form"
     # Affinity to make what is absent: away * (ln K - ln Q).
     drive = -away * residual
-    if drive > ROUNDING * (math.fsum(map(abs, terms)) + 1.0):
+    floor = ROUNDING * (math.fsum(map(abs, terms)) + 1.0)
+    if drive > floor:
         return f"{what}: ln K - ln Q = {drive:.3g} in that direction", residual
+    if drive >= -floor and not _varies(problem, nu, n, growth):
+        return INDIFFERENT, residual
     return "", residual
+
+
+def _varies(problem: Problem, nu: Sequence[float], n: Sequence[float], growth: float) -> bool:
+    """Whether ln Q changes as the reaction leaves an end at which pure phases or the fluid are absent."""
+    present = [(n[i], nu[i]) for i, phase in enumerate(problem.phases) if phase == "fluid" and n[i]]
+    if not any(c for _, c in present):
+        return False
+    if not problem.state.per_total:
+        return True
+    total = math.fsum(amount for amount, _ in present)
+    return any(abs(c * total - growth * amount) > ROUNDING * abs(c) * total for amount, c in present)
 
 
 def _too_little(
