@@ -19,7 +19,8 @@ FORMULAS = [
     "=SUM(A1:B$2,Sheet2!C:C,'My Sheet'!$1:$2)+Table1[[#This Row],[a]]*2^-3%", "=A1#", "=@A1:A5", "=-2^2",
     "=LET(x,1,LAMBDA(y,x+y)(2))", "=Sheet1:Sheet3!A1", "=A1:INDEX(B:B,3)", "=SUM((A1:B2,C3))", "=A1:B2 B2:C3",
     '={1,2;"a",#N/A}', "=_xlfn.XLOOKUP(1,A:A,B:B)", "=[1]!FOO(1)", "=[1]Sheet1!A1", "=1-2-3/4*5",
-    "='[1]My Sheet'!A1:B2", "=name1+Sheet1!name2", "=IF(,1,)", "=Table1[@a]", "=Table1[[a]:[b]]", "=1E-5", "=TRUE",
+    "='[1]My Sheet'!A1:B2", "=name1+Sheet1!name2", "=IF(,1,)", "=Table1[@a]", "=Table1[[a]:[b]]",
+    "=1E-5", "=TRUE",
     '=IF(A1>=2,"a""b",1)',
     "=1%%", "=--A1", "=-A1%", "=2^3^2", "=A1=B1=C1", "=A1&B1=C1", "=a.b*\\x", "=[2]!_xldudf_NS_F(A1)", "=f()",
     "=DeptSales[[#Totals],[a b]:[c]]", "=SUM(OFFSET(A1,0,0):B2)", "='It''s'!A1", "=1+2&3+4",
@@ -108,7 +109,7 @@ def test_another_parser_reads_the_same(formula):
 def test_another_parser_reads_the_corpus_the_same():
     if not CORPUS.is_dir():
         pytest.skip("the corpus of workbooks is not beside the project")
-    seen, different = set(), []
+    seen, different, unread = set(), [], []
     for path in sorted(CORPUS.glob("**/*.xls[xm]")):
         try:
             book = open_book(path)
@@ -116,15 +117,17 @@ def test_another_parser_reads_the_corpus_the_same():
             continue
         seen.update(f.text for sheet in book.sheets for f in sheet.formulas.values() if f.text)
     for text in sorted(seen):
+        mine = ours(parse(text))
         try:
             other = theirs(formualizer.parse("=" + text).to_dict())
-            mine = ours(parse(text))
-        except (formualizer.ParserError, FormulaError) as error:
-            different.append(f"{text}: {error}")
+        except formualizer.ParserError:
+            unread.append(text)
             continue
         if mine != other:
             different.append(f"{text}: {mine} {other}")
     assert len(seen) > 2000
+    # the other parser does not read columns with an escaped apostrophe
+    assert [text for text in unread if "''" not in text and "'#" not in text] == []
     # a decimal comma, which one program wrote into a file, makes no formula that anybody means
     assert [d for d in different if "(-4,3)" not in d] == []
 

@@ -89,7 +89,7 @@ class Native:
     @property
     def least(self) -> int:
         """Fewest arguments."""
-        return sum(not p.optional for p in self.parameters)
+        return max((i for i, p in enumerate(self.parameters, 1) if not p.optional), default=0)
 
     @property
     def most(self) -> int:
