@@ -57,7 +57,7 @@ def solve(problem: Problem) -> Solution:
     >>> problem = Problem(("N2O4", "NO2"), ("fluid", "fluid"), ((one, two),), (1.0, 0.0),
     ...                   (-1.8971199848858813,), State("P", 298.15, p=1.0))
     >>> [round(n, 6) for n in solve(problem).require().n]
-    [0.809893, 0.380214]
+    [0.809883, 0.380235]
     """
     if len(problem.nu) == 1 and problem.model is None:
         from xleq.equilibrium import single

@@ -43,7 +43,7 @@ def certify(problem: Problem, n: Sequence[float]) -> Certificate:
     >>> certify(problem, (0.5, 0.5)).ok
     True
     >>> certify(problem, (0.6, 0.4)).reason
-    'A + ... is not at equilibrium: ln Q - ln K = -0.405'
+    'A = B would still run forward: ln Q - ln K = -0.405'
     """
     for i, amount in enumerate(n):
         if not 0.0 <= amount < math.inf:

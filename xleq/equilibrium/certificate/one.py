@@ -144,8 +144,14 @@ def _reach(problem: Problem, nu: Sequence[float], n: Sequence[float], mean: floa
 
 
 def _off(problem: Problem, residual: float) -> str:
-    first = next(name for name, c in zip(problem.species, problem.nu[0], strict=True) if c < 0)
-    return f"{first} + ... is not at equilibrium: ln Q - ln K = {residual:.3g}"
+    """The reaction that is not at equilibrium, written out, and which way it would run."""
+    sides: tuple[list[str], list[str]] = ([], [])
+    for name, c in zip(problem.species, problem.nu[0], strict=True):
+        if c:
+            sides[c > 0].append(name if abs(c) == 1 else f"{abs(c)} {name}")
+    way = "backward" if residual > 0.0 else "forward"
+    reaction = f"{' + '.join(sides[0])} = {' + '.join(sides[1])}"
+    return f"{reaction} would still run {way}: ln Q - ln K = {residual:.3g}"
 
 
 def _at_end(
