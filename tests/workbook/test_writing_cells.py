@@ -169,11 +169,14 @@ def test_a_spill_that_grows_makes_cells_and_rows_in_order(make_book: BookMaker) 
     )
 
 
-def test_a_spill_that_shrinks_empties_the_cells_it_leaves(make_book: BookMaker) -> None:
+@pytest.mark.parametrize("told", [{}, {(3, 2): BLANK}])
+def test_a_spill_that_shrinks_empties_the_cells_it_leaves(
+    make_book: BookMaker, told: dict[Place, Value]
+) -> None:
     path = make_book(
         {"Loop": data(f'<row r="2">{SPILL}</row><row r="3"><c r="B3" s="1"><v>2</v></c></row>')}, **DYNAMIC
     )
-    assert sheet_after(path, {(2, 2): NA}, {(2, 2): Area(2, 2, 2, 2)}) == data(
+    assert sheet_after(path, {(2, 2): NA, **told}, {(2, 2): Area(2, 2, 2, 2)}) == data(
         '<row r="2"><c r="B2" cm="1" t="e"><f t="array" ref="B2">X</f><v>#N/A</v></c></row>'
         '<row r="3"><c r="B3" s="1"/></row>'
     )

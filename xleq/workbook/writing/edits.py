@@ -87,6 +87,8 @@ def _add_children(edits: dict[Place, Edit], sheet: Sheet, results: SheetResults)
     for place, value in results.values.items():
         if place in sheet.formulas:
             continue
+        if value is BLANK and place in filled_before and place not in filled_now:
+            continue  # a cell that a spill has left is emptied below
         if place not in filled_now:
             raise InputError(f"{_where(sheet, place)} has a result, but no formula fills it")
         stored = sheet.stored.get(place, BLANK)
