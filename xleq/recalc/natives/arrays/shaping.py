@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from xleq.cells import BLANK, NA, NUM, VALUE, CellError, Missing, Value
+from xleq.cells import BLANK, MAX_ROW, NA, NUM, VALUE, CellError, Missing, Value
 from xleq.recalc.coerce import to_number
 from xleq.recalc.natives.arrays.making import size, taken_columns, taken_rows
 from xleq.recalc.natives.table import native
@@ -144,7 +144,7 @@ def _wrapped(vector: Array, count: float, pad: Value | Missing) -> list[list[Val
     if vector.height != 1 and vector.width != 1:
         raise Fail(CellError("#VALUE!", "a row or a column is wanted"))
     n = int(count)
-    if n < 1:
+    if not 1 <= n <= MAX_ROW:
         raise Fail(NUM)
     flat = list(vector.flat)
     flat += [_filler(pad)] * (-len(flat) % n)

@@ -51,7 +51,7 @@ def besseli(x: Value, order: Value) -> float:
 @native("BESSELK", "value value")
 def besselk(x: Value, order: Value) -> float:
     """Modified Bessel function of the second kind."""
-    from scipy.special import kn
+    from scipy.special import kv
 
     argument, n = _given(x, order, positive=True)
-    return finite(float(kn(n, argument)))
+    return finite(float(kv(float(n), argument)))
