@@ -86,7 +86,8 @@ def timevalue(context: Context, text: str) -> float:
         serial = parse_date(text, year=context.now().year, date_1904=context.date_1904)
     if serial is None:
         raise _not_a_date(text)
-    return serial % 1.0
+    milliseconds = round(serial * SECONDS * 1000) % (SECONDS * 1000)
+    return milliseconds / (SECONDS * 1000)
 
 
 @native("YEAR", "number", context=True)

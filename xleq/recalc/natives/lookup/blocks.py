@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from xleq.cells import REF, VALUE, CellError, Value
+from xleq.cells import VALUE, CellError, Value
 from xleq.recalc.context import Context
 from xleq.recalc.operands import Area, Argument, Array, Fail, Operand, Ref
 
@@ -84,12 +84,14 @@ class Block:
             raise Fail(otherwise)
         return self.all_values()
 
+    def taken(self, top: int, left: int, bottom: int, right: int) -> Operand:
+        """A part; the value itself where it is one element of an array."""
+        if self._array is not None and top == bottom and left == right:
+            return self._array.at(top, left)
+        return self.part(top, left, bottom, right)
+
     def line(self, index: int, across: bool) -> Operand:
         """The column, or the row, at an index: a single cell of a row or a column."""
         if across:
-            if index >= self.width:
-                raise Fail(REF)
-            return self.part(0, index, self.height - 1, index)
-        if index >= self.height:
-            raise Fail(REF)
-        return self.part(index, 0, index, self.width - 1)
+            return self.taken(0, index, self.height - 1, index)
+        return self.taken(index, 0, index, self.width - 1)

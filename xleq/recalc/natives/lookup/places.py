@@ -52,9 +52,7 @@ def index(
         raise Fail(CellError("#REF!", "the row or column lies outside the table"))
     top, bottom = (r - 1, r - 1) if r else (0, block.height - 1)
     left, right = (c - 1, c - 1) if c else (0, block.width - 1)
-    if block.is_reference or r == 0 or c == 0:
-        return block.part(top, left, bottom, right)
-    return block.value(top, left)
+    return block.taken(top, left, bottom, right)
 
 
 @native("OFFSET", "range number number number~ number~", volatile=True)
