@@ -91,7 +91,7 @@ def _constant(context: Context, area: Area, i: int, j: int, criterion: Value) ->
 
 
 def _selected(context: Context, table: Array, field: Any, criteria: Ref) -> list[Value]:
-    """Values of a column in the selected rows; without a column, of the first one that is filled."""
+    """Values of a column in the selected rows; without a column, a number for each of them."""
     if table.height < 2:
         raise Fail(VALUE)
     headers, *rows = table.rows()
@@ -106,8 +106,6 @@ def _selected(context: Context, table: Array, field: Any, criteria: Ref) -> list
 @native("DGET", "array any range", context=True)
 def dget(context: Context, table: Array, field: Any, criteria: Ref) -> Value:
     """The single value selected; #VALUE! for none, #NUM! for more than one."""
-    if field is MISSING:
-        raise Fail(VALUE)
     values = _selected(context, table, field, criteria)
     if not values:
         raise Fail(VALUE)
@@ -132,9 +130,9 @@ _STATISTICS: Final[dict[str, Callable[[Array], float]]] = {
 
 
 def _declare(name: str, statistic: Callable[[Array], float]) -> None:
-    @native(name, "array any range", context=True)
-    def call(context: Context, table: Array, field: Any, criteria: Ref) -> float:
-        if field is MISSING and name not in ("DCOUNT", "DCOUNTA"):
+    @native(name, "array any~ range", context=True)
+    def call(context: Context, table: Array, field: Any = MISSING, criteria: Ref | None = None) -> float:
+        if criteria is None or (field is MISSING and name not in ("DCOUNT", "DCOUNTA")):
             raise Fail(VALUE)
         return statistic(Array.column(_selected(context, table, field, criteria)))
 

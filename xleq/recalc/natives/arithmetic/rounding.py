@@ -47,7 +47,7 @@ def ceil15(x: float) -> float:
 
 def _at_digits(x: float, digits: float, rounding: str) -> float:
     places = math.trunc(digits)
-    if x == 0.0 or places > 320:
+    if x == 0.0 or places > 14 - math.floor(math.log10(abs(x))):
         return x
     if places < -320:
         return math.inf if rounding == ROUND_UP else 0.0
