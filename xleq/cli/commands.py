@@ -84,6 +84,86 @@ def functions(
     raise typer.Exit(run(name, as_json=json))
 
 
+calc = typer.Typer(help="The live functions in LibreOffice Calc.", no_args_is_help=True)
+excel = typer.Typer(help="The live functions in Excel for Windows.", no_args_is_help=True)
+app.add_typer(calc, name="calc")
+app.add_typer(excel, name="excel")
+
+Office = Annotated[
+    Path | None,
+    typer.Option("--office", metavar="SOFFICE", help="LibreOffice's soffice, where it is not found alone."),
+]
+
+
+@calc.command("install")
+def calc_install(office: Office = None) -> None:
+    """Build the add-in from the function table and put it into LibreOffice."""
+    from xleq.cli.calc import run_install
+
+    raise typer.Exit(run_install(office))
+
+
+@calc.command("remove")
+def calc_remove(office: Office = None) -> None:
+    """Take the add-in out of LibreOffice."""
+    from xleq.cli.calc import run_remove
+
+    raise typer.Exit(run_remove(office))
+
+
+@calc.command("status")
+def calc_status(office: Office = None) -> None:
+    """Show which LibreOffice there is, whether the add-in fits it, and whether it is installed."""
+    from xleq.cli.calc import run_status
+
+    raise typer.Exit(run_status(office))
+
+
+@excel.command("install")
+def excel_install() -> None:
+    """Build the add-in from the function table and put it into Excel."""
+    from xleq.cli.excel import run_install
+
+    raise typer.Exit(run_install())
+
+
+@excel.command("remove")
+def excel_remove() -> None:
+    """Take the add-in out of Excel."""
+    from xleq.cli.excel import run_remove
+
+    raise typer.Exit(run_remove())
+
+
+@excel.command("status")
+def excel_status() -> None:
+    """Show which Excel there is and whether the add-in is installed."""
+    from xleq.cli.excel import run_status
+
+    raise typer.Exit(run_status())
+
+
+@excel.command("vba")
+def excel_vba() -> None:
+    """Print the functions as VBA, to be pasted into a workbook."""
+    from xleq.cli.excel import run_vba
+
+    raise typer.Exit(run_vba())
+
+
+@excel.command("smoke")
+def excel_smoke(
+    books: Books,
+    out: Annotated[Path, typer.Option("--out", "-o", metavar="FILE", help="Where the report goes.")] = Path(
+        "excel_report.txt"
+    ),
+) -> None:
+    """Recalculate workbooks in Excel and compare every cell with the headless values."""
+    from xleq.cli.excel import run_smoke
+
+    raise typer.Exit(run_smoke(books, out))
+
+
 def _version(wanted: bool) -> None:
     if wanted:
         from xleq import __version__

@@ -18,7 +18,8 @@ from typing import Final
 from xml.sax.saxutils import escape, quoteattr
 
 from xleq import __version__
-from xleq.functions import TABLE, Argument, Function
+from xleq.functions import TABLE, Function
+from xleq.hosts.wording import argument_help
 
 #: Name of the extension, as the office lists it.
 IDENTIFIER: Final = "org.xleq.calc"
@@ -108,14 +109,6 @@ def method_name(function: Function) -> str:
     return first + "".join(part.capitalize() for part in rest)
 
 
-def help_text(argument: Argument) -> str:
-    """What an argument means, with unit, default and known words, as the function wizard shows it."""
-    unit = f" [{argument.unit}]" if argument.unit else ""
-    known = f"; known: {', '.join(argument.known)}" if argument.known else ""
-    default = f"; default {argument.default}" if argument.optional and argument.default is not None else ""
-    return f"{argument.meaning}{unit}{known}{default}"
-
-
 def _idl(functions: Iterable[Function]) -> str:
     lines = []
     for f in functions:
@@ -133,7 +126,7 @@ def _text(name: str, value: str) -> str:
 def _node(f: Function) -> str:
     parameters = "".join(
         f'<node oor:name="argument{i}" oor:op="replace">{_text("DisplayName", a.name)}'
-        f"{_text('Description', help_text(a))}</node>"
+        f"{_text('Description', argument_help(a))}</node>"
         for i, a in enumerate(f.arguments, 1)
     )
     return (
