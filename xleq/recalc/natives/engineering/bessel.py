@@ -33,10 +33,10 @@ def besselj(x: Value, order: Value) -> float:
 @native("BESSELY", "value value")
 def bessely(x: Value, order: Value) -> float:
     """Bessel function of the second kind."""
-    from scipy.special import yn
+    from scipy.special import yv
 
     argument, n = _given(x, order, positive=True)
-    return finite(float(yn(n, argument)))
+    return finite(float(yv(float(n), argument)))
 
 
 @native("BESSELI", "value value")

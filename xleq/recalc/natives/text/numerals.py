@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import re
-from decimal import Decimal
+from decimal import Decimal, localcontext
+from typing import Final
 
 from xleq.cells import BLANK, CellError, Value
 from xleq.errors import FormulaError, InputError
@@ -85,14 +86,19 @@ def numbervalue(text: str, decimal: str = ".", group: str = ",") -> float:
     return number / 100.0**percents
 
 
+#: Digits that a number and its decimals can have together.
+_DIGITS: Final = 500
+
+
 def _fixed(x: float, decimals: float, commas: bool) -> tuple[str, bool]:
     """Digits of the rounded magnitude, and whether the rounded number is negative."""
     places = int(decimals)
     if abs(places) > 127:
         raise value_error("the number of decimals is beyond 127")
-    d: Decimal = rounded(exact_digits(abs(x)), places)
-    if places < 0:
-        d = d.quantize(Decimal(1))
+    with localcontext(prec=_DIGITS):
+        d: Decimal = rounded(exact_digits(abs(x)), places)
+        if places < 0:
+            d = d.quantize(Decimal(1))
     return f"{d:,f}" if commas else f"{d:f}", x < 0 and d != 0
 
 
