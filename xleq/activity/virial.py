@@ -137,6 +137,17 @@ class Virial:
         matrix[np.ix_(self.inside, self.inside)] = slopes
         return values, matrix
 
+    def pressure(self, n: Array, state: State) -> float:
+        """Pressure of the gas at T and V, or that of the state [bar]."""
+        if state.kind == "P":
+            return state.p
+        gas = n[self.inside]
+        total = float(gas.sum())
+        if total <= 0.0:
+            return 0.0
+        mean = float(gas @ self.coefficients(state.t) @ gas) / (total * total)
+        return total * R_L_BAR * state.t / (state.v - total * mean)
+
     def notes(self, n: Array, state: State) -> tuple[str, ...]:
         """Warnings at this composition.
 
@@ -149,11 +160,7 @@ class Virial:
         total = float(gas.sum())
         if total <= 0.0:
             return ()
-        y = gas / total
-        p = state.p
-        if state.kind == "V":
-            mean = float(y @ self.coefficients(state.t) @ y)
-            p = total * R_L_BAR * state.t / (state.v - total * mean)
+        y, p = gas / total, self.pressure(n, state)
         limit = 0.5 * state.t * float(y @ self.pc) / float(y @ self.tc)
         if p > 2.0 * limit:
             raise OutOfRangeError(

@@ -18,7 +18,7 @@ from xleq.functions import (
     solutions,
     thermochemistry,
 )
-from xleq.functions.table import Argument, Example, Function, Given, Memory
+from xleq.functions.table import Argument, Example, Function, Given, Memory, evaluate_with_notes
 
 _TOPICS: Final = (
     reactions,
@@ -36,7 +36,7 @@ TABLE: Final[dict[str, Function]] = {f.name: f for topic in _TOPICS for f in top
 
 _MEMORY: Final = Memory()
 
-__all__ = ["TABLE", "Argument", "Example", "Function", "call"]
+__all__ = ["TABLE", "Argument", "Example", "Function", "call", "call_with_notes"]
 
 
 def call(name: str, given: Sequence[Given]) -> Value | Grid:
@@ -59,9 +59,39 @@ def call(name: str, given: Sequence[Given]) -> Value | Grid:
     >>> call("XLEQ_COMPOSITION_V", ["2 HI = H2 + I2", 0.25, "HI; H2; I2", "1; 0; 0", 700.0, 1.0, "moles H2"])
     0.25
     """
+    function = _named(name)
+    return function if isinstance(function, CellError) else _MEMORY.evaluate(function, given)
+
+
+def call_with_notes(name: str, given: Sequence[Given]) -> tuple[Value | Grid, tuple[str, ...]]:
+    """As `call`, computed afresh, with what a checker should know of the result.
+
+    Parameters
+    ----------
+    name : str
+        In any case.
+    given : sequence
+        As for `call`.
+
+    Returns
+    -------
+    Value or Grid
+    tuple of str
+        Method, model and its range, data that were extrapolated, species that cannot form.
+
+    Examples
+    --------
+    >>> call_with_notes("XLEQ_ACTIVITY_COEFFICIENT", ["Na+", 0.6])[1]
+    ('ionic strength 0.6 mol/L: davies is meant for up to 0.5 mol/L',)
+    """
+    function = _named(name)
+    return (function, ()) if isinstance(function, CellError) else evaluate_with_notes(function, given)
+
+
+def _named(name: str) -> Function | CellError:
     function = TABLE.get(name) or TABLE.get(name.upper())
-    if function is None:
-        near = difflib.get_close_matches(name.upper(), TABLE, 3, 0.6)
-        hint = f"; near it: {', '.join(near)}" if near else ""
-        return CellError(NAME.code, f"there is no function {name}{hint}")
-    return _MEMORY.evaluate(function, given)
+    if function is not None:
+        return function
+    near = difflib.get_close_matches(name.upper(), TABLE, 3, 0.6)
+    hint = f"; near it: {', '.join(near)}" if near else ""
+    return CellError(NAME.code, f"there is no function {name}{hint}")

@@ -33,6 +33,7 @@ Kind = Literal[
     "molar entropy",
     "amounts",
     "concentrations",
+    "fractions",
     "K",
     "Ks",
     "constants",
@@ -45,7 +46,7 @@ _RATIO: Final = re.compile(r"\s*([+-]?\d{1,6})\s*/\s*(\d{1,6})\s*")
 
 #: Kinds that take a list: a range, an array, or text with semicolons.
 LIST_KINDS: Final = frozenset(
-    {"texts", "numbers", "multipliers", "temperatures", "amounts", "concentrations", "Ks", "K or data"}
+    {"texts", "numbers", "multipliers", "temperatures", "amounts", "concentrations", "fractions", "Ks"}
 )
 
 WANT_WORDS: Final = (
@@ -190,7 +191,10 @@ def _k(value: Value | Grid, known: tuple[str, ...]) -> float:
 
 def _ks(value: Value | Grid, known: tuple[str, ...]) -> tuple[float, ...]:
     read = []
-    for position, item in enumerate(_items(value), 1):
+    items = _items(value)
+    while items and items[-1] is BLANK:  # as in `_texts`
+        items.pop()
+    for position, item in enumerate(items, 1):
         try:
             read.append(_k(item, known))
         except InputError as e:
@@ -264,6 +268,7 @@ READERS: Final[dict[Kind, Callable[[Value | Grid, tuple[str, ...]], Any]]] = {
     "molar entropy": _quantity("molar entropy"),
     "amounts": _quantities("amount", blank_is_zero=True, negative=False),
     "concentrations": _quantities("concentration", blank_is_zero=True, negative=False),
+    "fractions": _quantities("number", blank_is_zero=True, negative=False),
     "K": _k,
     "Ks": _ks,
     "constants": _constants,

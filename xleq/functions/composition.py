@@ -9,7 +9,7 @@ from typing import Final, Literal
 from xleq.cells import Grid, Value
 from xleq.equilibrium import State
 from xleq.functions.arguments import Want
-from xleq.functions.conditions import Options, certified, problem_maker
+from xleq.functions.conditions import Options, equilibrium
 from xleq.functions.results import wanted
 from xleq.functions.systems import Fluid, system
 from xleq.functions.table import Argument, Example, Function, Result
@@ -126,8 +126,7 @@ def _composition(
     fluid: Fluid,
 ) -> Result:
     read = system(reactions, species, fluid)
-    problem_at = problem_maker(read, feed, k, options, data, fluid)
-    return wanted(read, certified(problem_at(state)), want)
+    return wanted(read, equilibrium(read, feed, k, options, data).solve_telling(state), want)
 
 
 def _function(
@@ -189,14 +188,25 @@ FUNCTIONS: Final = (
         (
             REACTIONS,
             Argument("K", "constants", "constant of each, on c° = 1 mol/L or as basis says; or data"),
-            Argument("species", "texts", "every solute and pure phase; solvent water may be left out"),
-            Argument("initial", "concentrations", "concentration of each before reaction", unit="mol/L"),
+            Argument(
+                "species", "texts", "every solute, pure phase and open gas; solvent water may be left out"
+            ),
+            Argument(
+                "initial", "concentrations",
+                "concentration of each before reaction; empty for solvent water and open gases", unit="mol/L",
+            ),
             want_argument("concentrations"),
-            options_argument("basis", "activity", "davies", "extrapolate"),
+            options_argument("basis", "activity", "davies", "open", "extrapolate"),
             Argument("T", "temperature", "temperature", 298.15, unit="K"),
         ),
-        "solutes at equilibrium at constant volume: what `want` names; pure phases in moles per litre",
+        "solutes at equilibrium at constant volume: what `want` names; pure phases in moles per litre; a gas "
+        "above the solution stays at the partial pressure that option open gives it",
         (
+            Example(
+                '=XLEQ_COMPOSITION_C("CO2(g) = CO2(aq)", 0.034, "CO2(g); CO2(aq)", "0; 0", '
+                '"concentrations CO2(aq)", "open=CO2 0.5 bar")',
+                0.017,
+            ),
             Example(
                 '=XLEQ_COMPOSITION_C("CH3COOH = CH3COO- + H+", 1.75E-5, "CH3COOH; CH3COO-; H+", "0.1; 0; 0", '
                 '"concentrations H+")',

@@ -4,25 +4,25 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping
+from dataclasses import dataclass, replace
+from fractions import Fraction
 from typing import Final, TypeAlias
 
-import numpy as np
-
-from xleq.cells import Grid, Value
-from xleq.constants import Fit, dh_from_fit, ln_factor_of, ln_k_from_fit, parse_basis
+from xleq.cells import BLANK, Grid, Value
+from xleq.constants import Basis, Fit, dh_from_fit, ln_factor_of, ln_k_from_fit, parse_basis
 from xleq.equilibrium import Problem, Solution, State, solve
 from xleq.equilibrium.problem import Nonideality
 from xleq.errors import InputError
 from xleq.functions.arguments import READERS
 from xleq.functions.constants import read_fit
 from xleq.functions.systems import Fluid, System
+from xleq.functions.table import tell
+from xleq.reactions import parse_species
 from xleq.thermo import ReactionData, Table, reaction_data, read_data, standard_table
-from xleq.units import R
+from xleq.units import P_STANDARD_BAR, R, read_quantity
 
 Numbers: TypeAlias = tuple[float, ...]
 Options: TypeAlias = Mapping[str, str]
-#: Ln K° of each reaction at a state.
-Constants: TypeAlias = Callable[[State], Numbers]
 
 GAS_MODELS: Final = ("ideal", "PR", "virial")
 ACTIVITY_MODELS: Final = ("ideal", "davies", "debye-huckel")
@@ -53,6 +53,53 @@ def chosen(options: Options, name: str, known: tuple[str, ...]) -> str:
     raise InputError(f"option {name}={text} is not known; known are {', '.join(known)}")
 
 
+@dataclass(frozen=True)
+class Constants:
+    """Ln K of each reaction at any state, and where they come from.
+
+    Parameters
+    ----------
+    at : callable
+        Ln K [n_reactions] at a state: ln K° with the pressures of open gases in them.
+    data : tuple of ReactionData
+        Where they follow from formation data.
+    t_min, t_max : float
+        Range of temperature for which they are known. [K]
+    """
+
+    at: Callable[[State], Numbers]
+    data: tuple[ReactionData, ...] = ()
+    t_min: float = 0.0
+    t_max: float = math.inf
+
+    def notes(self, t: float) -> tuple[str, ...]:
+        """What a checker should know of them at a temperature [K]."""
+        return tuple(note for d in self.data for note in d.notes(t))
+
+    def with_open(self, nu: tuple[tuple[Fraction, ...], ...], pressures: Mapping[int, float]) -> Constants:
+        """The same for reactions in which gases of given pressures [bar] count as pure phases."""
+        shifts = tuple(
+            math.fsum(float(row[i]) * math.log(p / P_STANDARD_BAR) for i, p in pressures.items())
+            for row in nu
+        )
+
+        def at(state: State) -> Numbers:
+            values = self.at(state)
+            if len(values) != len(shifts):
+                return values
+            return tuple(value - shift for value, shift in zip(values, shifts, strict=True))
+
+        return replace(self, at=at)
+
+
+def is_data(k: Value | Grid) -> bool:
+    """Whether the argument K is the word data, in one cell or in all."""
+    if isinstance(k, list):
+        words = [v for row in k for v in row if v is not BLANK]
+        return bool(words) and all(isinstance(v, str) and v.strip().lower() == "data" for v in words)
+    return isinstance(k, str) and k.strip().lower() == "data"
+
+
 def constants_of(
     read: System, k: Value | Grid, options: Options, table: Table, *, fits: bool = False
 ) -> Constants:
@@ -77,32 +124,44 @@ def constants_of(
     MissingDataError
         If a species is not in the table.
     """
-    if isinstance(k, str) and k.strip().lower() == "data":
+    extrapolate = extrapolates(options)
+    if is_data(k):
         if "basis" in options:
             raise InputError("constants from formation data are K°; leave the option basis away")
-        return _from_data(read, table, extrapolate=extrapolates(options))
-    basis = options.get("basis")
-    if fits and _is_fit(k, len(read.reactions)):
+        return _from_data(read, table, extrapolate=extrapolate)
+    if extrapolate:
+        raise InputError("option extrapolate is about formation data; K is not data here")
+    basis = parse_basis(options["basis"]) if "basis" in options else None
+    if fits and is_fit(k, len(read.reactions)):
         correlations = fits_of(k, len(read.reactions))
-        from_fits = lambda state: tuple(ln_k_from_fit(fit, state.t) for fit in correlations)  # noqa: E731
-        return _on_basis(read, from_fits, basis)
+        return Constants(
+            lambda state: tuple(ln_k_from_fit(fit, state.t) for fit in correlations),
+            t_min=max(fit.t_min for fit in correlations),
+            t_max=min(fit.t_max for fit in correlations),
+        )
     values: Numbers = READERS["Ks"](k, ())
-    return _on_basis(read, lambda state: values, basis)
+    if basis is None:
+        return Constants(lambda state: values)
+    return Constants(lambda state: _standard(read, values, basis, state))
 
 
 def _from_data(read: System, table: Table, *, extrapolate: bool) -> Constants:
-    data: list[ReactionData] = [reaction_data(r, table) for r in read.reactions]
-    return lambda state: tuple(d.ln_k(state.t, extrapolate=extrapolate) for d in data)
+    data = tuple(reaction_data(r, table) for r in read.reactions)
+    at: Callable[[State], Numbers] = lambda state: tuple(  # noqa: E731
+        [d.ln_k(state.t, extrapolate=extrapolate) for d in data]
+    )
+    return Constants(at, data, max(d.t_min for d in data), min(d.t_max for d in data))
 
 
-def _is_fit(k: Value | Grid, n_reactions: int) -> bool:
+def is_fit(k: Value | Grid, n_reactions: int) -> bool:
+    """Whether the argument K holds more numbers than reactions: coefficients of correlations."""
     if isinstance(k, str):
         return k.count(";") + 1 > n_reactions
-    return isinstance(k, list) and sum(len(row) for row in k) > n_reactions
+    return isinstance(k, list) and sum(v is not BLANK for row in k for v in row) > n_reactions
 
 
 def fits_of(k: Value | Grid, n_reactions: int) -> list[Fit]:
-    """The correlation of each reaction, from coefficients or from a block of XLEQ_K_FIT.
+    """The correlation of each reaction, from coefficients or from blocks of XLEQ_K_FIT, one below the other.
 
     Raises
     ------
@@ -110,10 +169,15 @@ def fits_of(k: Value | Grid, n_reactions: int) -> list[Fit]:
         If there is not one for each reaction.
     """
     blocks: list[Grid]
-    if n_reactions == 1 or not isinstance(k, list):
-        blocks = [k if isinstance(k, list) else [[k]]]
+    if not isinstance(k, list):
+        blocks = [[[k]]]
+    elif k[0][0] == "term":
+        starts = [i for i, row in enumerate(k) if row[0] == "term"]
+        blocks = [_block(k[a:b]) for a, b in zip(starts, [*starts[1:], len(k)], strict=True)]
+    elif n_reactions == 1:
+        blocks = [k]
     else:
-        blocks = [[row] for row in k]
+        blocks = [[row] for row in k if any(v is not BLANK for v in row)]
     if len(blocks) != n_reactions:
         raise InputError(
             f"{n_reactions} reactions but {len(blocks)} rows of coefficients; give one row a reaction"
@@ -121,24 +185,25 @@ def fits_of(k: Value | Grid, n_reactions: int) -> list[Fit]:
     return [read_fit(block) for block in blocks]
 
 
-def _on_basis(read: System, given: Constants, basis: str | None) -> Constants:
-    if basis is None:
-        return given
-    on = parse_basis(basis)
+def _block(rows: Grid) -> Grid:
+    """A block of XLEQ_K_FIT without the empty rows and columns that a larger range around it has."""
+    width = next((i for i, v in enumerate(rows[0]) if v is BLANK), len(rows[0]))
+    return [row[:width] for row in rows if row[0] is not BLANK]
 
-    def standard(state: State) -> Numbers:
-        if state.kind == "X" and on.kind not in ("K", "Kx"):
-            raise InputError(
-                f"{on} is for gases and solutes; constants of a liquid mixture are on mole fractions"
-            )
-        p = state.p if state.kind == "P" else None
-        values = given(state)
-        if len(values) != len(read.reactions):
-            return values  # the problem says how many there must be
-        pairs = zip(values, read.reactions, strict=True)
-        return tuple(value - ln_factor_of(on, reaction, state.t, p) for value, reaction in pairs)
 
-    return standard
+def _standard(read: System, values: Numbers, on: Basis, state: State) -> Numbers:
+    """Ln K° from constants on another basis."""
+    if state.kind == "X" and on.kind not in ("K", "Kx"):
+        raise InputError(
+            f"{on} is for gases and solutes; constants of a liquid mixture are on mole fractions"
+        )
+    if len(values) != len(read.reactions):
+        return values  # the problem says how many there must be
+    if state.kind == "X":
+        return values
+    p = state.p if state.kind == "P" else None
+    pairs = zip(values, read.reactions, strict=True)
+    return tuple(value - ln_factor_of(on, reaction, state.t, p) for value, reaction in pairs)
 
 
 def slopes_of(read: System, k: Value | Grid, table: Table, t: float) -> Numbers | None:
@@ -149,15 +214,15 @@ def slopes_of(read: System, k: Value | Grid, table: Table, t: float) -> Numbers 
     MissingDataError
         If T lies outside the range of the data.
     """
-    if isinstance(k, str) and k.strip().lower() == "data":
+    if is_data(k):
         return tuple(reaction_data(r, table).dln_k_dt(t) for r in read.reactions)
-    if _is_fit(k, len(read.reactions)):
+    if is_fit(k, len(read.reactions)):
         fits = fits_of(k, len(read.reactions))
         return tuple(1000.0 * dh_from_fit(fit, t) / (R * t * t) for fit in fits)
     return None
 
 
-def model_of(read: System, options: Options, table: Table, fluid: Fluid) -> Nonideality | None:
+def model_of(read: System, options: Options, table: Table) -> Nonideality | None:
     """The departure from ideal that the options ask for; None for an ideal fluid.
 
     Raises
@@ -167,7 +232,7 @@ def model_of(read: System, options: Options, table: Table, fluid: Fluid) -> Noni
     MissingDataError
         If a gas has no critical constants.
     """
-    if fluid == "g":
+    if read.fluid == "g":
         name = chosen(options, "gas", GAS_MODELS)
         if name == "ideal":
             return None
@@ -176,30 +241,122 @@ def model_of(read: System, options: Options, table: Table, fluid: Fluid) -> Noni
         keys = [s.key for s in read.species]
         gases = [s.phase == "g" for s in read.species]
         return peng_robinson(keys, gases, table) if name == "PR" else virial(keys, gases, table)
-    name = chosen(options, "activity", ACTIVITY_MODELS) if fluid == "aq" else "ideal"
+    name = chosen(options, "activity", ACTIVITY_MODELS) if read.fluid == "aq" else "ideal"
     if name == "ideal":
         if "davies" in options:
             raise InputError("option davies is the coefficient of activity=davies; give that too")
         return None
     from xleq.activity import Aqueous
 
-    charges = [float(s.charge) if s.phase == "aq" else 0.0 for s in read.species]
+    charges = _charges(read)
     if name == "debye-huckel":
+        if "davies" in options:
+            raise InputError("option davies is the coefficient of activity=davies, not of debye-huckel")
         return Aqueous(charges, "debye-huckel")
     return Aqueous(charges, "davies", float(chosen(options, "davies", ("0.3", "0.2"))))
 
 
-def problem_maker(
+def _charges(read: System) -> list[float]:
+    return [float(s.charge) if s.phase == "aq" else 0.0 for s in read.species]
+
+
+def _open_pressures(read: System, options: Options) -> dict[int, float]:
+    """Partial pressure of each open gas by its place [bar]: ``open=CO2 0.0004 atm, O2 0.21 bar``."""
+    pressures: dict[int, float] = {}
+    for part in filter(None, map(str.strip, options.get("open", "").split(","))):
+        name, _, quantity = part.partition(" ")
+        if not quantity:
+            raise InputError(f"option open={part}: write a gas and its pressure: open=CO2 0.0004 atm")
+        gas = parse_species(name, "g")
+        place = next((i for i in read.open_gases if read.species[i] == gas), None)
+        if place is None:
+            raise InputError(f"option open: {gas.key} takes part in no reaction, or is not in the list")
+        if place in pressures:
+            raise InputError(f"option open: {gas.key} is given twice")
+        pressures[place] = read_quantity(quantity, "pressure")
+    for i in read.open_gases:
+        if i not in pressures:
+            s = read.species[i]
+            raise InputError(
+                f"{s.key} is a gas above the solution; give its partial pressure in the options, such as "
+                f"open={s.name} 0.0004 atm"
+            )
+    return pressures
+
+
+@dataclass(frozen=True)
+class Equilibrium:
+    """What the arguments of a worksheet function say of an equilibrium, ready for any state.
+
+    Parameters
+    ----------
+    read : System
+    feed : tuple [n_species] of float
+        With solvent and open gases. [mol]
+    constants : Constants
+    model : Nonideality or None
+    remarks : tuple of str
+        What a checker should know at any state.
+    """
+
+    read: System
+    feed: Numbers
+    constants: Constants
+    model: Nonideality | None
+    remarks: tuple[str, ...] = ()
+
+    def problem(self, state: State) -> Problem:
+        """The problem at a state.
+
+        Raises
+        ------
+        InputError
+            If there is not one constant for each reaction.
+        MissingDataError
+            If the temperature lies outside the range of the data.
+        """
+        read, ln_k = self.read, self.constants.at(state)
+        if len(ln_k) != len(read.nu):
+            raise InputError(f"{len(read.nu)} reactions but {len(ln_k)} constants; give one K a reaction")
+        return Problem(read.names, read.phases, read.nu, self.feed, ln_k, state, read.formulas, self.model)
+
+    def solve(self, state: State) -> Solution:
+        """The certified solution at a state.
+
+        Raises
+        ------
+        NoAnswerError
+            If there is none, or the model does not reach so far.
+        """
+        return solve(self.problem(state)).require()
+
+    def solve_telling(self, state: State) -> Solution:
+        """The same for the result of a cell: with notes for whoever checks it."""
+        solution = self.solve(state)
+        tell((*self.remarks, *self.read.notes, *self.constants.notes(state.t), *solution.notes))
+        return solution
+
+
+def equilibrium(
     read: System,
     feed: Numbers,
     k: Value | Grid,
     options: Options,
     data: Grid | None,
-    fluid: Fluid,
     *,
     fits: bool = False,
-) -> Callable[[State], Problem]:
-    """The problem at any state, from the arguments of a worksheet function.
+) -> Equilibrium:
+    """The equilibrium that the arguments of a worksheet function describe.
+
+    Parameters
+    ----------
+    read : System
+    feed : tuple of float
+        As the user lists them. [mol]
+    k, options, data
+        As the arguments of these names.
+    fits : bool
+        Whether K may be coefficients of correlations.
 
     Raises
     ------
@@ -208,26 +365,18 @@ def problem_maker(
     MissingDataError
         If formation data or critical constants are missing.
     """
-    table = table_of(data, fluid)
+    table = table_of(data, read.fluid)
+    full = read.fed(feed)
     constants = constants_of(read, k, options, table, fits=fits)
-    model = model_of(read, options, table, fluid)
-    if model is not None and fluid == "aq":
+    model = model_of(read, options, table)
+    if model is not None and read.fluid == "aq":
         from xleq.activity import check_neutral
 
-        check_neutral([float(s.charge) for s in read.species[: read.n_listed]], feed)
-    return lambda state: read.problem(feed, constants(state), state, model)
-
-
-def certified(problem: Problem) -> Solution:
-    """The certified solution, within the range of its model.
-
-    Raises
-    ------
-    NoAnswerError
-        If there is none, or the model does not reach so far.
-    """
-    solution = solve(problem).require()
-    notes = getattr(problem.model, "notes", None)
-    if notes is not None and math.fsum(solution.n) > 0.0:
-        notes(np.array(solution.n), problem.state)  # raises beyond the hard limit of the model
-    return solution
+        check_neutral(_charges(read), full)
+    if read.fluid != "aq":
+        return Equilibrium(read, full, constants, model)
+    pressures = _open_pressures(read, options)
+    if not pressures:
+        return Equilibrium(read, full, constants, model)
+    said = tuple(f"{read.species[i].key} held at {p:.6g} bar, without an end" for i, p in pressures.items())
+    return Equilibrium(read, full, constants.with_open(read.nu, pressures), model, said)

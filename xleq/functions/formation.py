@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import replace
 from fractions import Fraction
 from functools import lru_cache
@@ -14,10 +14,10 @@ from xleq.equilibrium import State
 from xleq.errors import InputError, MissingDataError, NoAnswerError
 from xleq.functions.arguments import Want
 from xleq.functions.composition import DATA, FEED, SPECIES, T, options_argument, want_argument
-from xleq.functions.conditions import Options, certified, extrapolates, problem_maker, table_of
+from xleq.functions.conditions import Equilibrium, Options, equilibrium, extrapolates, table_of
 from xleq.functions.results import wanted
 from xleq.functions.systems import System, system
-from xleq.functions.table import Argument, Example, Function, Result
+from xleq.functions.table import Argument, Example, Function, Result, tell
 from xleq.reactions import Species, null_space, parse_species, reaction_text, smallest_integers
 from xleq.thermo import SpeciesData
 
@@ -25,6 +25,11 @@ Texts = tuple[str, ...]
 Numbers = tuple[float, ...]
 
 _P: Final = Argument("P", "pressure", "total pressure, absolute unless its unit says gauge", unit="bar")
+#: Factor by which the search for the adiabatic temperature goes on from that of the feed.
+_STEP: Final = 1.3
+#: A jump of the enthalpy is told from a slope by this relative step of T and this heat capacity [kJ/(mol K)].
+_NEAR: Final = 1e-7
+_STEEPEST: Final = 1000.0
 _ERRORS: Final = (
     "#VALUE! a species cannot be read, has no formula or is doubled; lists of unequal length",
     "#N/A a species is not in the data, or T lies outside their range",
@@ -63,51 +68,126 @@ def _composition_data(
     species: Texts, feed: Numbers, t: float, p: float, want: Want, options: Options, data: Grid | None
 ) -> Result:
     read = _all_reactions(species)
-    problem_at = problem_maker(read, feed, "data", options, data, "g")
-    return wanted(read, certified(problem_at(State("P", t, p=p))), want)
+    found = equilibrium(read, feed, "data", options, data)
+    return wanted(read, found.solve_telling(State("P", t, p=p)), want)
 
 
 def _adiabatic(
     species: Texts, feed: Numbers, t_feed: float, p: float, want: Want, options: Options, data: Grid | None
 ) -> Result:
     read = _all_reactions(species)
-    problem_at = problem_maker(read, feed, "data", options, data, "g")
-    known = [table_of(data).find(s) for s in read.species]
-    beyond = extrapolates(options)
-    before = _enthalpy(known, feed, t_feed, beyond)
-    low, high = max(d.t_min for d in known), min(d.t_max for d in known)
-
-    def gain(t: float) -> float:
-        return _enthalpy(known, certified(problem_at(State("P", t, p=p))).n, t, beyond) - before
-
-    t = _root(gain, low, high)
+    found = equilibrium(read, feed, "data", options, data)
+    balance = _Balance(found, [table_of(data).find(s) for s in read.species], p, extrapolates(options))
+    t = balance.temperature(t_feed)
     if want.word == "t":
+        if balance.jumps_at(t):
+            tell([f"a phase is changing at {t:.6g} K, in part: the feed has not the enthalpy for all of it"])
+        else:
+            found.solve_telling(State("P", t, p=p))
         return t
-    return wanted(read, certified(problem_at(State("P", t, p=p))), want)
-
-
-def _enthalpy(known: Sequence[SpeciesData], n: Sequence[float], t: float, extrapolate: bool) -> float:
-    """Enthalpy of amounts at a temperature. [kJ]."""
-    return math.fsum(
-        amount * data.h(t, extrapolate=extrapolate)
-        for amount, data in zip(n, known, strict=True)
-        if amount > 0.0
-    )
-
-
-def _root(gain: Callable[[float], float], low: float, high: float) -> float:
-    """Where the enthalpy is that of the feed: it rises with T at equilibrium, so there is one place."""
-    from scipy.optimize import brentq
-
-    if low >= high:
-        raise MissingDataError(f"the data of these species share no temperature ({low:g} to {high:g} K)")
-    at_low, at_high = gain(low), gain(high)
-    if at_low > 0.0 or at_high < 0.0:
-        side = "below" if at_low > 0.0 else "above"
+    if balance.jumps_at(t):
         raise NoAnswerError(
-            f"the adiabatic temperature lies {side} the range of the data, {low:g} to {high:g} K"
+            f"at the adiabatic temperature, {t:.6g} K, a phase is changing in part, and T and P do not tell "
+            "how far; ask for T alone"
         )
-    return float(brentq(gain, low, high, xtol=1e-9, rtol=1e-13, maxiter=200))
+    return wanted(read, found.solve_telling(State("P", t, p=p)), want)
+
+
+class _Balance:
+    """The enthalpy at equilibrium less that of the feed, as a function of temperature [kJ].
+
+    At constant pressure the enthalpy at equilibrium rises with temperature (H. B. Callen, Thermodynamics,
+    2nd ed., 1985, ch. 8: stability), so it meets that of the feed once, on a slope or in a jump.
+    """
+
+    def __init__(self, found: Equilibrium, known: Sequence[SpeciesData], p: float, extrapolate: bool) -> None:
+        self.found, self.known, self.p, self.extrapolate = found, known, p, extrapolate
+        self.seen: dict[float, float] = {}
+        starts, ends = [d.t_min for d in known], [d.t_max for d in known]
+        self.low, self.high = (min(starts), max(ends)) if extrapolate else (max(starts), min(ends))
+        if not self.low < self.high:
+            raise MissingDataError(f"the data of these species share no temperature: {self._ends()}")
+        self.before = 0.0
+
+    def _ends(self) -> str:
+        first = max(self.known, key=lambda d: d.t_min)
+        last = min(self.known, key=lambda d: d.t_max)
+        return f"those of {first.key} begin at {first.t_min:g} K, those of {last.key} end at {last.t_max:g} K"
+
+    def _enthalpy(self, n: Sequence[float], t: float) -> float:
+        return math.fsum(
+            amount * data.h(t, extrapolate=self.extrapolate)
+            for amount, data in zip(n, self.known, strict=True)
+            if amount > 0.0
+        )
+
+    def gain(self, t: float) -> float:
+        """Enthalpy at equilibrium at T less that of the feed. [kJ]."""
+        if t not in self.seen:
+            n = self.found.solve(State("P", t, p=self.p)).n
+            self.seen[t] = self._enthalpy(n, t) - self.before
+        return self.seen[t]
+
+    def temperature(self, t_feed: float) -> float:
+        """Where the enthalpy is that of the feed. [K].
+
+        Raises
+        ------
+        MissingDataError
+            If that lies outside the range of the data.
+        """
+        from scipy.optimize import brentq
+
+        self.before = self._enthalpy(self.found.feed, t_feed)
+        below, above = self._bracket(min(max(t_feed, self.low), self.high))
+        if below == above:
+            return below
+        try:
+            return float(brentq(self.gain, below, above, xtol=1e-9, rtol=1e-13, maxiter=200))
+        except NoAnswerError:
+            return self._by_halves()
+
+    def _bracket(self, t: float) -> tuple[float, float]:
+        """Two temperatures between which the balance closes, from the feed's outwards."""
+        gain = self.gain(t)
+        rising = gain < 0.0
+        while gain != 0.0:
+            end = self.high if rising else self.low
+            if t == end:
+                side = "above" if rising else "below"
+                raise MissingDataError(
+                    f"the adiabatic temperature lies {side} {end:g} K, where the data end: {self._ends()}"
+                )
+            last, t = t, min(t * _STEP, end) if rising else max(t / _STEP, end)
+            gain = self.gain(t)
+            if (gain < 0.0) is not rising:
+                return (last, t) if rising else (t, last)
+        return t, t
+
+    def _by_halves(self) -> float:
+        """The same where a pure phase changes: at that temperature itself there may be no answer."""
+        below = max(t for t, gain in self.seen.items() if gain < 0.0)
+        above = min(t for t, gain in self.seen.items() if gain >= 0.0)
+        while above - below > 1e-12 * above:
+            middle = 0.5 * (below + above)
+            try:
+                if self.gain(middle) < 0.0:
+                    below = middle
+                else:
+                    above = middle
+            except NoAnswerError:
+                return middle
+        return 0.5 * (below + above)
+
+    def jumps_at(self, t: float) -> bool:
+        """Whether the enthalpy passes that of the feed in a jump there."""
+        try:
+            span = abs(self.gain(t * (1.0 + _NEAR)) - self.gain(t * (1.0 - _NEAR)))
+        except (NoAnswerError, MissingDataError):
+            return False
+        # Between the two, Cp of the whole feed, with reaction, would have to be beyond any real one.
+        scale = math.fsum(self.found.feed) * t * 2.0 * _NEAR
+        return span > _STEEPEST * scale
 
 
 FUNCTIONS: Final = (
@@ -151,7 +231,11 @@ FUNCTIONS: Final = (
         ),
         "temperature [K] at which the equilibrium has the enthalpy of the feed, or what `want` names",
         _adiabatic,
-        (*_ERRORS, "#NUM! the temperature lies outside the range of the data"),
+        (
+            *_ERRORS,
+            "#N/A the adiabatic temperature lies outside the range of the data",
+            "#NUM! a composition is asked for where a phase changes in part",
+        ),
         "enthalpy balance with Cp(T): Smith, Van Ness and Abbott, Introduction to Chemical Engineering "
         "Thermodynamics, 7th ed., 2005, section 4.7; ideal gas",
         (

@@ -10,15 +10,15 @@ from xleq.cells import Grid, Value
 from xleq.constants import STANDARD
 from xleq.equilibrium import Solution, State
 from xleq.equilibrium.inverse import approach, pressure_for, temperature_for
-from xleq.errors import InputError
+from xleq.errors import InputError, MissingDataError, NoAnswerError
 from xleq.functions.arguments import Want
 from xleq.functions.composition import DATA, FEED, REACTIONS, SPECIES, K, T
-from xleq.functions.conditions import problem_maker, table_of
+from xleq.functions.conditions import Equilibrium, equilibrium, table_of
 from xleq.functions.quotients import ln_q_of
 from xleq.functions.reactions import REACTION
 from xleq.functions.results import wanted
 from xleq.functions.systems import System, system
-from xleq.functions.table import Argument, Example, Function
+from xleq.functions.table import Argument, Example, Function, tell
 from xleq.reactions import check_balance, parse_reaction
 from xleq.thermo import reaction_data
 
@@ -35,6 +35,8 @@ _ERRORS: Final = (
     "#N/A as XLEQ_COMPOSITION_P",
     "#NUM! nothing in the interval gives the value (the range reached is told), or several places do",
 )
+#: Where XLEQ_APPROACH looks for the temperature of equilibrium, within the data. [K]
+_SEARCHED: Final = (200.0, 3000.0)
 _P: Final = Argument("P", "pressure", "total pressure, absolute unless its unit says gauge", unit="bar")
 _TARGET: Final = Argument("target", "want", "the result, as want for one cell, such as fractions NH3")
 _VALUE: Final = Argument("value", "number", "the value that it is to have")
@@ -65,9 +67,26 @@ def _t_for(
     data: Grid | None,
 ) -> float:
     read = system(reactions, species, "g")
-    problem_at = problem_maker(read, feed, k, {}, data, "g", fits=True)
+    found = equilibrium(read, feed, k, {}, data, fits=True)
+    low, high = _known_part(found, t_low, t_high)
     of = _one_number(read, target)
-    return temperature_for(lambda t: problem_at(State("P", t, p=p)), of, value, t_low, t_high)
+    t = temperature_for(lambda t: found.problem(State("P", t, p=p)), of, value, low, high)
+    found.solve_telling(State("P", t, p=p))
+    return t
+
+
+def _known_part(found: Equilibrium, t_low: float, t_high: float) -> tuple[float, float]:
+    """The part of the interval in which the constants are known."""
+    known = found.constants
+    low, high = max(t_low, known.t_min), min(t_high, known.t_max)
+    if t_low < t_high and not low < high:
+        raise MissingDataError(
+            f"K is known from {known.t_min:g} to {known.t_max:g} K, nowhere from {t_low:g} to {t_high:g} K"
+        )
+    if (low, high) != (t_low, t_high) and t_low < t_high:
+        tell([f"searched from {low:g} to {high:g} K only, where K is known"])
+        return low, high
+    return t_low, t_high
 
 
 def _p_for(
@@ -82,9 +101,11 @@ def _p_for(
     p_high: float,
 ) -> float:
     read = system(reactions, species, "g")
-    problem_at = problem_maker(read, feed, k, {}, None, "g", fits=True)
+    found = equilibrium(read, feed, k, {}, None, fits=True)
     of = _one_number(read, target)
-    return pressure_for(lambda p: problem_at(State("P", t, p=p)), of, value, p_low, p_high)
+    p = pressure_for(lambda p: found.problem(State("P", t, p=p)), of, value, p_low, p_high)
+    found.solve_telling(State("P", t, p=p))
+    return p
 
 
 def _approach(
@@ -93,8 +114,18 @@ def _approach(
     read = parse_reaction(reaction, "g")
     check_balance(read)
     known = reaction_data(read, table_of(data))
+    if len(amounts) > len(species) and not any(amounts[len(species) :]):
+        amounts = amounts[: len(species)]
+    if len(amounts) != len(species):
+        raise InputError(f"{len(species)} species but {len(amounts)} amounts; give one amount a species")
     ln_q = ln_q_of(reaction, species, amounts, p, t, STANDARD)
-    return approach(known.ln_k, ln_q, t, known.t_min, known.t_max)
+    if ln_q == -math.inf:
+        raise NoAnswerError("a product has no amount, so no temperature makes K equal to the quotient")
+    low, high = max(known.t_min, _SEARCHED[0]), min(known.t_max, _SEARCHED[1])
+    if not low < high:
+        raise MissingDataError(f"the data of {reaction} share no temperature from 200 to 3000 K")
+    tell(known.notes(t))
+    return approach(known.ln_k, ln_q, t, low, high)
 
 
 FUNCTIONS: Final = (
@@ -111,8 +142,12 @@ FUNCTIONS: Final = (
             _P,
             _TARGET,
             _VALUE,
-            Argument("T_low", "temperature", "lowest temperature of the search", 300.0, unit="K"),
-            Argument("T_high", "temperature", "highest temperature of the search", 1500.0, unit="K"),
+            Argument(
+                "T_low", "temperature", "lowest temperature of the search, within data", 300.0, unit="K"
+            ),
+            Argument(
+                "T_high", "temperature", "highest temperature of the search, within data", 1500.0, unit="K"
+            ),
             DATA,
         ),
         "the temperature at which the target has the value [K]",
@@ -170,7 +205,7 @@ FUNCTIONS: Final = (
         (
             "#VALUE! the reaction cannot be read or does not balance; a species is missing or doubled",
             "#N/A a species is not in the data",
-            "#NUM! a species of the reaction has no amount; K equals the quotient nowhere in their range",
+            "#NUM! a species of the reaction has no amount; nowhere from 200 to 3000 K is K the quotient",
         ),
         "definition; ideal gas; common practice, no source, for the sign",
         (

@@ -4,15 +4,20 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from typing import Final
+from typing import TYPE_CHECKING, Final, Protocol, runtime_checkable
 
 from xleq.cells import Grid, Value
-from xleq.equilibrium import Solution
+from xleq.equilibrium import Solution, State
 from xleq.errors import InputError, NoAnswerError
 from xleq.functions.arguments import Want
 from xleq.functions.systems import System
 from xleq.units import R_L_BAR
 
+if TYPE_CHECKING:
+    import numpy as np
+    from numpy.typing import NDArray
+
+_NO_AMOUNT: Final = "it is held at its partial pressure and has no amount; ask for its change"
 _PER_SPECIES: Final = ("moles", "fractions", "pressures", "concentrations", "change", "conversion")
 
 
@@ -34,14 +39,16 @@ def wanted(system: System, solution: Solution, want: Want) -> Value | list[Value
     word = want.word
     if word in _PER_SPECIES:
         one = _ONE[word]
+        open_gases = () if word == "change" else system.open_gases
         if want.species is not None:
-            value = one(solution, system.index(want.species))
+            place = system.index(want.species)
+            value = one(solution, place) if place not in open_gases else _NO_AMOUNT
             if isinstance(value, str):
                 raise NoAnswerError(f"{want.species} has no {word}: {value}")
             return value
         listed: list[Value] = []
         for i in range(system.n_listed):
-            value = one(solution, i)
+            value = one(solution, i) if i not in open_gases else _NO_AMOUNT
             listed.append("" if isinstance(value, str) else value)
         return listed
     if want.species is not None:
@@ -51,6 +58,15 @@ def wanted(system: System, solution: Solution, want: Want) -> Value | list[Value
 
 def _moles(solution: Solution, i: int) -> float | str:
     return solution.n[i]
+
+
+@runtime_checkable
+class _WithPressure(Protocol):
+    """A gas model that knows the pressure."""
+
+    def pressure(self, n: NDArray[np.float64], state: State) -> float:
+        """Pressure [bar]."""
+        ...
 
 
 def fluid_total(solution: Solution) -> float:
@@ -74,10 +90,21 @@ def _pressures(solution: Solution, i: int) -> float | str:
         raise InputError("partial pressures are results of gases only")
     if solution.problem.phases[i] == "pure":
         return "it is a pure phase, not part of the gas"
-    if state.kind == "V":
+    if state.kind == "V" and solution.problem.model is None:
         return solution.n[i] * R_L_BAR * state.t / state.v
     fraction = _fractions(solution, i)
-    return fraction if isinstance(fraction, str) else fraction * state.p
+    return fraction if isinstance(fraction, str) else fraction * _pressure(solution)
+
+
+def _pressure(solution: Solution) -> float:
+    """Total pressure [bar]: that of the state, or of the gas model in its volume."""
+    state, model = solution.problem.state, solution.problem.model
+    if state.kind == "P":
+        return state.p
+    assert isinstance(model, _WithPressure)
+    import numpy as np
+
+    return model.pressure(np.array(solution.n), state)
 
 
 def _concentrations(solution: Solution, i: int) -> float | str:
@@ -145,7 +172,10 @@ def _table(system: System, solution: Solution) -> Grid:
     grid: Grid = [["species", "initial", "change", "equilibrium"]]
     for i in range(system.n_listed):
         change = _change(solution, i)
-        grid.append([system.names[i], solution.problem.n0[i], change, solution.n[i]])
+        ends: tuple[Value, Value] = (solution.problem.n0[i], solution.n[i])
+        if i in system.open_gases:
+            ends = ("", "")
+        grid.append([system.names[i], ends[0], change, ends[1]])
     return grid
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Final
 
 import numpy as np
@@ -14,7 +15,7 @@ from xleq.equilibrium.sensitivity import sensitivities, uncertainty
 from xleq.errors import InputError
 from xleq.functions.arguments import READERS
 from xleq.functions.composition import FEED, REACTIONS, SPECIES, T
-from xleq.functions.conditions import certified, fits_of, problem_maker, slopes_of, table_of
+from xleq.functions.conditions import equilibrium, fits_of, is_data, is_fit, slopes_of, table_of
 from xleq.functions.systems import System, system
 from xleq.functions.table import Argument, Example, Function, Result
 
@@ -43,7 +44,7 @@ def _sensitivity(
     reactions: Texts, k: Value | Grid, species: Texts, feed: Numbers, t: float, p: float, to: str
 ) -> Result:
     read = system(reactions, species, "g")
-    solution = certified(problem_maker(read, feed, k, {}, None, "g", fits=True)(State("P", t, p=p)))
+    solution = equilibrium(read, feed, k, {}, None, fits=True).solve_telling(State("P", t, p=p))
     found = sensitivities(solution, _slopes(read, k, t) if to == "T" else None)
     if to in ("T", "P"):
         by = found.by_t if to == "T" else found.by_p
@@ -54,7 +55,8 @@ def _sensitivity(
 
 
 def _listed(numbers: NDArray[np.float64]) -> list[Value]:
-    return [float(x) for x in numbers]
+    # Not a number: the derivative does not exist, as for a first trace of what opens a closed reaction.
+    return ["" if math.isnan(x) else float(x) for x in numbers]
 
 
 def _uncertainty(
@@ -69,7 +71,7 @@ def _uncertainty(
     u_p: float,
 ) -> list[Value]:
     read = system(reactions, species, "g")
-    solution = certified(problem_maker(read, feed, k, {}, None, "g", fits=True)(State("P", t, p=p)))
+    solution = equilibrium(read, feed, k, {}, None, fits=True).solve_telling(State("P", t, p=p))
     slopes = _slopes(read, k, t) if u_t else None
     return _listed(uncertainty(solution, _spread(read, k, u_lnk, t), u_t, u_p, slopes))
 
@@ -77,6 +79,8 @@ def _uncertainty(
 def _spread(read: System, k: Value | Grid, given: Value | Grid, t: float) -> Numbers:
     """Standard uncertainty of each ln K: as given, or from the covariance of the fits."""
     if isinstance(given, str) and given.strip().lower() == "fit":
+        if is_data(k) or not is_fit(k, len(read.reactions)):
+            raise InputError("u_lnK is fit, but K holds no fit; refer to the block of XLEQ_K_FIT in K")
         return tuple(u_ln_k_from_fit(fit, t) for fit in fits_of(k, len(read.reactions)))
     numbers: Numbers = READERS["numbers"](given, ())
     if len(numbers) != len(read.reactions):
@@ -98,7 +102,7 @@ FUNCTIONS: Final = (
             Argument("to", "word", "what changes", "lnK", known=("lnK", "T", "P", "feed")),
         ),
         "change of each amount with lnK [mol] or feed [-], a block with a row a species; with T [mol/K] or P "
-        "[mol/bar], a list",
+        "[mol/bar], a list; empty where there is no derivative",
         _sensitivity,
         _ERRORS,
         "implicit differentiation of the equilibrium conditions at the certified solution",
@@ -115,7 +119,7 @@ FUNCTIONS: Final = (
         (
             REACTIONS,
             _K,
-            Argument("u_lnK", "constants", "standard uncertainty of each ln K; or fit: from the block in K"),
+            Argument("u_lnK", "constants", "standard uncertainty of each ln K; or fit: from the blocks in K"),
             SPECIES,
             FEED,
             T,

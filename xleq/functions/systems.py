@@ -8,8 +8,7 @@ from fractions import Fraction
 from functools import lru_cache
 from typing import Final, Literal
 
-from xleq.equilibrium import Phase, Problem, State
-from xleq.equilibrium.problem import Nonideality
+from xleq.equilibrium import Phase
 from xleq.errors import InputError, XleqError
 from xleq.reactions import (
     Reaction,
@@ -26,9 +25,11 @@ Fluid = Literal["g", "aq", "l"]
 
 _FLUID_NAMES: Final = {"g": "gas", "aq": "solution", "l": "liquid mixture"}
 _PHASE_NAMES: Final = {"g": "a gas", "aq": "dissolved", "l": "a liquid", "s": "a solid"}
-_ALLOWED: Final[dict[Fluid, str]] = {"g": "gls", "aq": "als", "l": "ls"}
-#: Amount of solvent water taken where a species list leaves it out: 997.05 g/L over 18.015 g/mol. [mol/L]
+_ALLOWED: Final[dict[Fluid, str]] = {"g": "gls", "aq": "alsg", "l": "ls"}
+#: Amount of solvent water where none is given: 997.05 g/L over 18.015 g/mol. [mol/L]
 SOLVENT_WATER: Final = 55.35
+#: Amount of an open gas that a solution may take up, more than any can. [mol/L]
+RESERVOIR: Final = 1000.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,6 +38,7 @@ class System:
 
     Parameters
     ----------
+    fluid : {"g", "aq", "l"}
     names : tuple [n_species] of str
         As the user wrote them; solvent water that was left out comes last.
     species : tuple [n_species] of Species
@@ -51,6 +53,7 @@ class System:
         What a checker should know: reactions whose elements could not be checked.
     """
 
+    fluid: Fluid
     names: tuple[str, ...]
     species: tuple[Species, ...]
     phases: tuple[Phase, ...]
@@ -70,35 +73,48 @@ class System:
         """
         return _place(self.species[: self.n_listed], text)
 
-    def problem(
-        self,
-        feed: tuple[float, ...],
-        ln_k: tuple[float, ...],
-        state: State,
-        model: Nonideality | None = None,
-    ) -> Problem:
-        """The problem for given amounts, constants and conditions.
+    @property
+    def open_gases(self) -> tuple[int, ...]:
+        """Places of the gases above a solution: each is held at its partial pressure, without an end."""
+        if self.fluid != "aq":
+            return ()
+        return tuple(i for i, s in enumerate(self.species) if s.phase == "g")
+
+    def fed(self, amounts: tuple[float, ...]) -> tuple[float, ...]:
+        """The amount of every species [n_species], from those that the user lists.
+
+        Solvent water of which none is given counts as a litre of it, an open gas as more than can dissolve.
 
         Raises
         ------
         InputError
             If the lists do not fit, or a species neither reacts nor is fed.
         """
-        if len(feed) > self.n_listed and not any(feed[self.n_listed :]):
-            feed = feed[: self.n_listed]  # a range drawn longer than its list, as that of the species may be
-        if len(feed) != self.n_listed:
-            raise InputError(f"{self.n_listed} species but {len(feed)} amounts; give one amount a species")
-        if len(ln_k) != len(self.nu):
-            raise InputError(f"{len(self.nu)} reactions but {len(ln_k)} constants; give one K a reaction")
-        for i, amount in enumerate(feed):
+        n = self.n_listed
+        if len(amounts) > n and not any(amounts[n:]):
+            amounts = amounts[:n]  # a range drawn longer than its list, as that of the species may be
+        if len(amounts) != n:
+            raise InputError(f"{n} species but {len(amounts)} amounts; give one amount a species")
+        for i, amount in enumerate(amounts):
             if amount == 0.0 and not any(row[i] for row in self.nu):
                 raise InputError(
                     f"{self.names[i]} takes part in no reaction and has no feed; "
                     "correct its spelling or take it off the list"
                 )
-        if len(self.names) > self.n_listed:
-            feed = (*feed, SOLVENT_WATER * state.v)
-        return Problem(self.names, self.phases, self.nu, feed, ln_k, state, self.formulas, model)
+        return self._with_solvent(amounts) if self.fluid == "aq" else amounts
+
+    def _with_solvent(self, amounts: tuple[float, ...]) -> tuple[float, ...]:
+        full = [*amounts, *(0.0 for _ in self.names[len(amounts) :])]
+        for i, s in enumerate(self.species):
+            if s.phase == "g" and full[i]:
+                raise InputError(
+                    f"{s.key} is held at its partial pressure, so it has no amount; leave it empty or 0"
+                )
+            if s.phase == "g":
+                full[i] = RESERVOIR
+            elif s.name == "H2O" and s.phase == "l" and full[i] == 0.0:
+                full[i] = SOLVENT_WATER
+        return tuple(full)
 
 
 @lru_cache(maxsize=4096)
@@ -153,6 +169,7 @@ def system(reactions: tuple[str, ...], species: tuple[str, ...], fluid: Fluid) -
     nu = tuple(tuple(r.coefficient(s) or Fraction(0) for s in found) for r in read)
     formulas = tuple(s.composition() for s in found)
     return System(
+        fluid,
         tuple(names),
         tuple(found),
         tuple("fluid" if s.phase == fluid else "pure" for s in found),

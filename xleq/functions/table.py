@@ -9,7 +9,8 @@ from __future__ import annotations
 
 import inspect
 from collections import OrderedDict
-from collections.abc import Callable, Hashable, Sequence
+from collections.abc import Callable, Hashable, Iterable, Sequence
+from contextvars import ContextVar
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Any, Final, Literal, TypeAlias, cast
@@ -139,16 +140,35 @@ class Function:
         return [a.name.lower() for a in self.arguments] == list(inspect.signature(self.call).parameters)
 
 
+_NOTES: Final[ContextVar[dict[str, None] | None]] = ContextVar("notes", default=None)
+
+
+def tell(notes: Iterable[str]) -> None:
+    """Say what a checker should know of the result being computed; heard by `evaluate_with_notes` alone."""
+    heard = _NOTES.get()
+    if heard is not None:
+        heard.update(dict.fromkeys(notes))
+
+
+def evaluate_with_notes(function: Function, given: Sequence[Given]) -> tuple[Value | Grid, tuple[str, ...]]:
+    """As `evaluate`, with the notes: method, model, warnings, data that were extrapolated."""
+    heard: dict[str, None] = {}
+    token = _NOTES.set(heard)
+    try:
+        return evaluate(function, given), tuple(heard)
+    finally:
+        _NOTES.reset(token)
+
+
 def evaluate(function: Function, given: Sequence[Given]) -> Value | Grid:
     """Value or block of a worksheet function for what a host hands over.
 
     An error among the arguments is returned as it came. Every `XleqError` becomes a cell error with its
     reason; any other exception is a defect of the program and is left to the host.
     """
-    for item in given:
-        error = _first_error(item)
-        if error is not None:
-            return error
+    error = _error_among(given)
+    if error is not None:
+        return error
     try:
         result = function.call(*_read_all(function, given))
     except XleqError as e:
@@ -156,11 +176,15 @@ def evaluate(function: Function, given: Sequence[Given]) -> Value | Grid:
     return _laid_out(function, given, result)
 
 
-def _first_error(item: Given) -> CellError | None:
-    if isinstance(item, CellError):
-        return item
-    if isinstance(item, list):
-        return next((v for row in item for v in row if isinstance(v, CellError)), None)
+def _error_among(given: Sequence[Given]) -> CellError | None:
+    for item in given:
+        if isinstance(item, list):
+            for row in item:
+                for value in row:
+                    if isinstance(value, CellError):
+                        return value
+        elif isinstance(item, CellError):
+            return item
     return None
 
 
@@ -229,7 +253,8 @@ class Memory:
         found = self._results.get(key)
         if found is None:
             found = evaluate(function, given)
-            if not function.volatile:
+            # Errors are equal by code alone: one among the arguments must not be answered for another.
+            if not function.volatile and _error_among(given) is None:
                 self._results[key] = found
                 if len(self._results) > self.size:
                     self._results.popitem(last=False)

@@ -9,11 +9,11 @@ import numpy as np
 
 from xleq.cells import Grid, Value
 from xleq.constants import write_k
-from xleq.errors import InputError, MissingDataError
+from xleq.errors import InputError
 from xleq.functions.composition import DATA, SPECIES, T
 from xleq.functions.conditions import table_of
 from xleq.functions.reactions import REACTION, balanced_reaction
-from xleq.functions.table import Argument, Example, Function
+from xleq.functions.table import Argument, Example, Function, tell
 from xleq.reactions import molar_mass, parse_species
 from xleq.thermo import ReactionData, SpeciesData, citations, reaction_data
 
@@ -33,11 +33,14 @@ def _data_of(reaction: str, data: Grid | None) -> ReactionData:
 
 
 def _k_data(reaction: str, t: float, data: Grid | None) -> float | str:
-    return write_k(_data_of(reaction, data).ln_k(t))
+    found = _data_of(reaction, data)
+    tell((*found.sources(), *found.notes(t)))
+    return write_k(found.ln_k(t))
 
 
 def _reaction(reaction: str, property: str, t: float, data: Grid | None) -> float:  # noqa: A002 - its name in cells
     found = _data_of(reaction, data)
+    tell((*found.sources(), *found.notes(t)))
     if property == "dH":
         return found.dh(t)
     if property == "dS":
@@ -74,19 +77,23 @@ def _fugacity_coefficient(
 ) -> list[Value]:
     from xleq.activity import FluidState, peng_robinson
 
+    if len(fractions) > len(species) and not any(fractions[len(species) :]):
+        fractions = fractions[: len(species)]
     if len(fractions) != len(species):
         raise InputError(
             f"{len(species)} species but {len(fractions)} fractions; give one fraction a species"
         )
     total = math.fsum(fractions)
-    if min(fractions) < 0.0 or abs(total - 1.0) > 1e-6:
-        raise InputError(f"the fractions sum to {total:g}; they must be at least 0 and sum to 1")
+    if abs(total - 1.0) > 1e-6:
+        raise InputError(f"the fractions sum to {total:.8g}; they must sum to 1")
     read = [parse_species(s, "g") for s in species]
     for s in read:
         if s.phase != "g":
-            raise MissingDataError(f"{s.key} is not a gas")
+            raise InputError(f"{s.key} is not a gas")
     model = peng_robinson([s.key for s in read], [True] * len(read), table_of(data))
-    return [float(x) for x in np.exp(model.ln_gamma(np.array(fractions), FluidState("P", t, p)))]
+    n, state = np.array(fractions), FluidState("P", t, p)
+    tell(model.notes(n, state))
+    return [float(x) for x in np.exp(model.ln_gamma(n, state))]
 
 
 FUNCTIONS: Final = (
@@ -135,7 +142,7 @@ FUNCTIONS: Final = (
         "thermochemistry",
         (
             SPECIES,
-            Argument("fractions", "numbers", "mole fraction of each, summing to 1"),
+            Argument("fractions", "fractions", "mole fraction of each, summing to 1; an empty cell is 0"),
             T,
             Argument("P", "pressure", "pressure", unit="bar"),
             DATA,
