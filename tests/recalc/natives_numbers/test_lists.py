@@ -88,6 +88,22 @@ def test_places_in_long_ranges_are_those_of_the_ordered_list(evaluate: Any, k: i
     assert evaluate(f"RANK(A{k},A1:A80)", cells) == 1.0 + sum(x > numbers[k - 1] for x in numbers)
 
 
+def test_ranks_as_documented(evaluate: Any) -> None:
+    # source: Microsoft, documentation of RANK, RANK.EQ and RANK.AVG (from memory)
+    cells = {"A2": 7, "A3": 3.5, "A4": 3.5, "A5": 1, "A6": 2}
+    assert evaluate("RANK(A3,A2:A6,1)", cells) == 3.0
+    assert evaluate("RANK.EQ(A2,A2:A6,1)", cells) == 5.0
+    assert evaluate("RANK.EQ(6,A2:A6)", cells) == "#N/A"
+    warm = {f"B{i + 2}": x for i, x in enumerate([89, 88, 92, 101, 94, 97, 95])}
+    assert evaluate("RANK.AVG(94,B2:B8)", warm) == 4.0
+    assert evaluate("RANK.AVG(3.5,A2:A6)", cells) == 2.5
+
+
+def test_a_share_of_a_whole(evaluate: Any) -> None:
+    assert evaluate("PERCENTOF({1,2},{1,2,3,4})") == pytest.approx(0.3)
+    assert evaluate("PERCENTOF({1,2},{0})") == "#DIV/0!"
+
+
 def test_sumproduct_takes_text_as_zero_and_wants_equal_sizes(evaluate: Any) -> None:
     cells = {"A1": 2, "A2": "x", "A3": 4, "B1": 3, "B2": 5, "B3": True}
     assert evaluate("SUMPRODUCT(A1:A3,B1:B3)", cells) == 6.0

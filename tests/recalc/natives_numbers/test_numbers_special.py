@@ -151,3 +151,12 @@ def test_random_numbers_repeat_with_their_seed(evaluate: Any) -> None:
 )
 def test_bessel_functions_are_those_of_the_tables(evaluate: Any, formula: str, value: float) -> None:
     assert evaluate(formula) == pytest.approx(value, abs=1e-10)
+
+
+@pytest.mark.parametrize(
+    "pair", ["IMSEC IMCOS", "IMCOT IMTAN", "IMCSC IMSIN", "IMSECH IMCOSH", "IMCSCH IMSINH"]
+)
+def test_reciprocal_functions_multiply_to_one(evaluate: Any, pair: str) -> None:
+    one, other = pair.split()
+    for z in ("4+3i", "-0.5+2i", "1.25-0.75i"):
+        assert evaluate(f'IMABS(IMSUB(IMPRODUCT({one}("{z}"),{other}("{z}")),1))') < 1e-13

@@ -15,6 +15,7 @@ from xleq.recalc.natives.gather import (
     number_pairs,
     number_vector,
     numbers_of,
+    ratio,
 )
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import NUMBER_KIND, Argument, Array, Fail
@@ -52,6 +53,12 @@ def sum_(*arguments: Argument) -> float:
         else:
             total += direct_number(argument)
     return finite(total)
+
+
+@native("PERCENTOF", "array array")
+def percentof(part: Array, whole: Array) -> float:
+    """Sum of a part over the sum of the whole."""
+    return finite(ratio(running_total(0.0, part), running_total(0.0, whole)))
 
 
 @native("SUMSQ", "list*")
