@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-import re
-
 from xleq.cells import BLANK, NA, VALUE, CellError, Missing, Value
+from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
+from xleq.recalc.expressions import is_quick, regular_expression
 from xleq.recalc.natives.lookup import finding
 from xleq.recalc.natives.lookup.blocks import Block
 from xleq.recalc.natives.table import native
@@ -114,17 +114,13 @@ def _position(
     if mode in (-1, 1):
         return finding.nearest(values, wanted, mode > 0, backwards)
     if mode == 3:
-        return finding.matching(values, _regular(wanted), backwards)
+        if not isinstance(wanted, str):
+            raise Fail(VALUE)
+        expression = regular_expression(wanted)
+        if not is_quick(wanted, max((len(v) for v in values.flat if isinstance(v, str)), default=0)):
+            raise Unsupported("the regular expression could take too long on these texts")
+        return finding.matching(values, expression, backwards)
     return (finding.last_exact if backwards else finding.exact)(values, wanted, mode == 2)
-
-
-def _regular(wanted: Value) -> re.Pattern[str]:
-    if not isinstance(wanted, str):
-        raise Fail(VALUE)
-    try:
-        return re.compile(wanted)
-    except re.error as error:
-        raise Fail(CellError("#VALUE!", f"the pattern is not a regular expression: {error}")) from None
 
 
 @native("XMATCH", "value operand number~ number~", context=True)

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import re
-from functools import lru_cache
 
 from xleq.cells import CALC, MISSING, NA, VALUE, CellError, Missing, Value
+from xleq.recalc.columns import Unsupported
+from xleq.recalc.expressions import is_quick, regular_expression
 from xleq.recalc.natives.table import native
 from xleq.recalc.natives.text.characters import as_text, fitting, is_narrow, length, listed
 from xleq.recalc.operands import Array, Fail, Operand
-from xleq.recalc.patterns import has_wildcard, wildcard_pattern
+from xleq.recalc.patterns import has_wildcard, wildcard_position
 
 
 def _start(within: str, start: float) -> int:
@@ -40,8 +41,7 @@ def search(wanted: str, within: str, start: float = 1.0) -> float:
     first = _start(within, start)
     if not has_wildcard(wanted):
         return _found(within, within.lower().find(wanted.lower(), first))
-    match = wildcard_pattern(wanted).search(within, first)
-    return _found(within, match.start() if match else -1)
+    return _found(within, wildcard_position(wanted, within, first))
 
 
 @native("SUBSTITUTE", "text text text number?")
@@ -153,30 +153,26 @@ def textsplit(
     return Array.of_rows(filled)
 
 
-@lru_cache(maxsize=256)
-def _regex(pattern: str, ignore_case: bool) -> re.Pattern[str]:
-    try:
-        return re.compile(pattern, re.IGNORECASE if ignore_case else 0)
-    except (re.error, OverflowError, RecursionError) as error:
-        raise Fail(CellError("#VALUE!", f"the pattern is not a regular expression: {error}")) from None
-
-
-def _expression(pattern: str, case: float) -> re.Pattern[str]:
+def _expression(pattern: str, case: float, text: str) -> re.Pattern[str]:
+    """The regular expression; one that could take for ever on this text is not tried."""
     if int(case) not in (0, 1):
         raise Fail(VALUE)
-    return _regex(pattern, int(case) == 1)
+    expression = regular_expression(pattern, int(case) == 1)
+    if not is_quick(pattern, len(text)):
+        raise Unsupported("the regular expression could take too long on this text")
+    return expression
 
 
 @native("REGEXTEST", "text text number~")
 def regextest(text: str, pattern: str, case: float = 0.0) -> bool:
     """Whether a regular expression occurs in a text."""
-    return _expression(pattern, case).search(text) is not None
+    return _expression(pattern, case, text).search(text) is not None
 
 
 @native("REGEXEXTRACT", "text text number~ number~")
 def regexextract(text: str, pattern: str, mode: float = 0.0, case: float = 0.0) -> Value | Array:
     """First match, all matches, or the groups of the first match."""
-    expression = _expression(pattern, case)
+    expression = _expression(pattern, case, text)
     first = expression.search(text)
     if int(mode) not in (0, 1, 2):
         raise Fail(VALUE)
@@ -199,7 +195,7 @@ def regexreplace(
     text: str, pattern: str, replacement: str, occurrence: float = 0.0, case: float = 0.0
 ) -> str:
     """Matches replaced, all of them or one, counted from the end where negative."""
-    expression = _expression(pattern, case)
+    expression = _expression(pattern, case, text)
 
     def expanded(match: re.Match[str]) -> str:
         def group(reference: re.Match[str]) -> str:
