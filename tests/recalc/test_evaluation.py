@@ -333,3 +333,18 @@ def test_time_is_limited():
 
 def test_names_of_nothing_and_empty_intersections_are_errors():
     assert fresh({"A1": "=unknown_name", "A2": "=C1:C2 D1:D2"}) == {"A1": NAME, "A2": NULL}
+
+
+def test_precedents_are_what_a_formula_names():
+    from xleq.recalc import Precedents
+
+    names = (DefinedName("rate", "T!$B$2"), DefinedName("twice", "S!$C$3*rate"))
+    table = Table("Feed", 1, Area(1, 1, 3, 1), 1, 0, ("n",))
+    cells = {"A1": "=IF(B1>0,SUM(C:C),twice)+T!A1:B2+SUM(Feed[n])", "A2": 5, "A3": "=1+"}
+    found = Precedents(book({"S": cells, "T": {"A1": "n"}}, names=names, tables=(table,)))
+    assert [(n.sheet, tuple(n.area)) for n in found.of(at("A1"))] == [
+        ("S", (1, 2, 1, 2)), ("S", (1, 3, 1048576, 3)), ("S", (3, 3, 3, 3)), ("T", (2, 2, 2, 2)),
+        ("T", (1, 1, 2, 2)), ("T", (2, 1, 3, 1)),
+    ]  # fmt: skip
+    assert found.of(at("A2")) == found.of(at("A3")) == []
+    assert found.tree(at("A2")) is None

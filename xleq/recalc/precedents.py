@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, NamedTuple
 
+from xleq.cells import CellAddress
 from xleq.errors import FormulaError
 from xleq.recalc import tree
 from xleq.recalc.columns import Unsupported
@@ -12,9 +13,68 @@ from xleq.recalc.context import Context
 from xleq.recalc.operands import Area, Ref
 from xleq.recalc.parse import parse
 from xleq.recalc.references import area_of
+from xleq.workbook import Area as BookArea
+from xleq.workbook import Book
 
 if TYPE_CHECKING:
     from xleq.recalc.evaluate import Cell, Engine
+
+
+class Named(NamedTuple):
+    """An area that a formula names.
+
+    Parameters
+    ----------
+    sheet : str
+        Name of its sheet.
+    area : Area
+        Whole rows and columns as they are written.
+    """
+
+    sheet: str
+    area: BookArea
+
+
+class Precedents:
+    """What the formulas of a workbook name.
+
+    Parameters
+    ----------
+    book : Book
+    """
+
+    def __init__(self, book: Book) -> None:
+        from datetime import datetime
+
+        from xleq.recalc.evaluate import Engine, Settings
+
+        self._engine = Engine(book, {}, Settings(datetime(2000, 1, 1), check=False), {}, {})
+
+    def of(self, address: CellAddress) -> list[Named]:
+        """Areas that the formula of a cell names, in the order of its text; none for a constant.
+
+        Names and tables are followed. What INDIRECT and OFFSET find is not known from the text.
+        """
+        sheet = self._engine.book.sheet_named(address.sheet)
+        if sheet is None:
+            return []
+        names = self._engine.sheet_names
+        return [
+            Named(names[area.sheet], BookArea(*area[1:]))
+            for area in areas_of(self._engine, (sheet.index, address.row, address.column))
+            if area.sheet < len(names)
+        ]
+
+    def tree(self, address: CellAddress) -> tree.Node | None:
+        """Syntax tree of a cell's formula, references relative to the cell; None where there is none."""
+        sheet = self._engine.book.sheet_named(address.sheet)
+        formula = None if sheet is None else sheet.formulas.get((address.row, address.column))
+        if sheet is None or formula is None:
+            return None
+        try:
+            return self._engine.program((sheet.index, address.row, address.column), formula).node
+        except Unsupported:
+            return None
 
 
 def areas_of(engine: Engine, cell: Cell) -> list[Area]:
