@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 
+from xleq.recalc.natives.finance.roots import rate_of_zero
 from xleq.recalc.natives.table import native
 from xleq.recalc.natives.tools import tool
 
@@ -99,22 +100,7 @@ def rate(
     def excess(r: float) -> float:
         return present * _growth(r, periods) + payment * _annuity(r, periods, start) + future
 
-    r = guess
-    step = 1e-6 * max(abs(guess), 1e-2)
-    for _ in range(100):
-        here = excess(r)
-        slope = (excess(r + step) - excess(r - step)) / (2.0 * step)
-        if slope == 0.0:
-            raise ValueError
-        change = here / slope
-        while r - change <= -1.0:
-            change /= 2.0
-        r -= change
-        if abs(change) <= 1e-14 + 1e-13 * abs(r):
-            return r
-    if abs(change) < 1e-9:
-        return r
-    raise ValueError
+    return rate_of_zero(excess, guess)
 
 
 def _checked(rate: float, periods: float, present: float, first: float, last: float, start: float) -> None:

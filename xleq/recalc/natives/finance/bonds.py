@@ -116,7 +116,8 @@ def yield_of(
     if place.count == 1:
         coupon = rate / per_year
         owed = paid / 100.0 + place.gone / place.length * coupon
-        return (redemption / 100.0 + coupon - owed) / owed * per_year * place.length / place.left
+        left = 1.0 - place.gone / place.length
+        return (redemption / 100.0 + coupon - owed) / owed * per_year / left
     return _solved(lambda y: _price(place, rate, y, redemption, per_year), paid, rate or 0.1)
 
 
@@ -128,6 +129,8 @@ def duration(
     """Macaulay duration in years."""
     if rate < 0.0 or yield_ < 0.0:
         raise ValueError
+    if checked_basis(basis) in (2, 3):
+        raise Unsupported("durations on the bases 2 and 3")
     place, per_year = _place(context, settlement, maturity, frequency, basis), checked_frequency(frequency)
     share, factor = place.left / place.length, 1.0 + yield_ / per_year
     flows = [100.0 * rate / per_year] * place.count

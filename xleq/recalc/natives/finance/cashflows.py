@@ -7,6 +7,7 @@ from collections.abc import Callable
 from typing import Any
 
 from xleq.cells import DIV0, MISSING, NUM, VALUE
+from xleq.recalc.natives.finance.roots import rate_of_zero
 from xleq.recalc.natives.gather import check_errors, direct_number, guarded, numbers_of
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Array, Fail
@@ -19,30 +20,6 @@ def npv(rate: float, *flows: Argument) -> float:
     return sum((flow / (1.0 + rate) ** i for i, flow in enumerate(numbers_of(flows), 1)), 0.0)
 
 
-#: Nearer to -1 no rate is found.
-_LOWEST = -0.999999
-
-
-def _root(value: Callable[[float], tuple[float, float]], guess: float) -> float:
-    """Rate at which a present value vanishes, from its value and slope; #NUM! where the search fails."""
-    rate = guess
-    for _ in range(200):
-        here, slope = value(rate)
-        if here == 0.0:
-            return rate
-        if slope == 0.0 or not math.isfinite(here / slope):
-            raise Fail(NUM)
-        change = here / slope
-        while rate - change <= -1.0:
-            change /= 2.0
-        rate -= change
-        if abs(change) <= 1e-14 + 1e-13 * abs(rate):
-            return rate
-    if abs(change) < 1e-8:
-        return rate
-    raise Fail(NUM)
-
-
 @native("IRR", "list number~")
 @guarded
 def irr(flows: Argument, guess: float = 0.1) -> float:
@@ -53,15 +30,14 @@ def irr(flows: Argument, guess: float = 0.1) -> float:
     if not numbers or min(numbers) >= 0.0 or max(numbers) <= 0.0:
         raise Fail(NUM)
 
-    def value(rate: float) -> tuple[float, float]:
-        total, slope, factor = 0.0, 0.0, 1.0
-        for i, flow in enumerate(numbers):
+    def value(rate: float) -> float:
+        total, factor = 0.0, 1.0
+        for flow in numbers:
             total += flow * factor
-            slope -= i * flow * factor / (1.0 + rate)
             factor /= 1.0 + rate
-        return total, slope
+        return total
 
-    return _root(value, guess)
+    return rate_of_zero(value, guess)
 
 
 @native("MIRR", "list number number")
@@ -120,18 +96,10 @@ def xirr(flows: Argument, dates: Argument, guess: float = 0.1) -> float:
     if guess <= -1.0 or not amounts or min(amounts) >= 0.0 or max(amounts) <= 0.0:
         raise Fail(NUM)
 
-    def value(rate: float) -> tuple[float, float]:
-        total = slope = 0.0
-        for a, t in zip(amounts, years, strict=True):
-            part = a / (1.0 + rate) ** t
-            total += part
-            slope -= t * part / (1.0 + rate)
-        return total, slope
+    def value(rate: float) -> float:
+        return math.fsum(a / (1.0 + rate) ** t for a, t in zip(amounts, years, strict=True))
 
-    rate = _root(value, guess)
-    if rate < _LOWEST:
-        raise Fail(NUM)
-    return rate
+    return rate_of_zero(value, guess)
 
 
 @native("FVSCHEDULE", "number list")
