@@ -333,8 +333,13 @@ class Equilibrium:
     def solve_telling(self, state: State) -> Solution:
         """The same for the result of a cell: with notes for whoever checks it."""
         solution = self.solve(state)
-        tell((*self.remarks, *self.read.notes, *self.constants.notes(state.t), *solution.notes))
+        self.remark(solution)
         return solution
+
+    def remark(self, solution: Solution) -> None:
+        """Tell what a checker should know of a solution."""
+        constants = self.constants.notes(solution.problem.state.t)
+        tell((solution.method, *self.remarks, *self.read.notes, *constants, *solution.notes))
 
 
 def equilibrium(

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
 from dataclasses import replace
 from fractions import Fraction
@@ -11,10 +10,11 @@ from typing import Final
 
 from xleq.cells import Grid
 from xleq.equilibrium import State
-from xleq.errors import InputError, MissingDataError, NoAnswerError
+from xleq.errors import InputError, NoAnswerError
+from xleq.functions.adiabatic import EnthalpyBalance
 from xleq.functions.arguments import Want
 from xleq.functions.composition import DATA, FEED, SPECIES, T, options_argument, want_argument
-from xleq.functions.conditions import Equilibrium, Options, equilibrium, extrapolates, table_of
+from xleq.functions.conditions import Options, equilibrium, extrapolates, table_of
 from xleq.functions.results import wanted
 from xleq.functions.systems import System, system
 from xleq.functions.table import Argument, Example, Function, Result, tell
@@ -25,11 +25,6 @@ Texts = tuple[str, ...]
 Numbers = tuple[float, ...]
 
 _P: Final = Argument("P", "pressure", "total pressure, absolute unless its unit says gauge", unit="bar")
-#: Factor by which the search for the adiabatic temperature goes on from that of the feed.
-_STEP: Final = 1.3
-#: A jump of the enthalpy is told from a slope by this relative step of T and this heat capacity [kJ/(mol K)].
-_NEAR: Final = 1e-7
-_STEEPEST: Final = 1000.0
 _ERRORS: Final = (
     "#VALUE! a species cannot be read, has no formula or is doubled; lists of unequal length",
     "#N/A a species is not in the data, or T lies outside their range",
@@ -46,10 +41,12 @@ def _all_reactions(species: Texts) -> System:
             raise InputError(f"{text} has no formula, so its elements are not known")
         if s.phase == "aq" or s.charge:
             raise InputError(f"{s.key} is not a gas or a pure phase")
+        if read.count(s) > 1:
+            raise InputError(f"species {text} is in the list twice")
     texts = tuple(_marked(read, row) for row in _basis(read))
     if not texts:
         raise NoAnswerError("the elements allow no reaction among these species; nothing can change")
-    return replace(system(texts, tuple(s.key for s in read), "g"), names=species)
+    return replace(system(texts, tuple(s.key for s in read), "g"), names=species, derived=True)
 
 
 def _basis(read: Sequence[Species]) -> list[list[Fraction]]:
@@ -64,10 +61,17 @@ def _marked(read: Sequence[Species], row: Sequence[Fraction]) -> str:
     return reaction_text(keyed, row)
 
 
+def _data_of(species: Texts, data: Grid | None) -> list[SpeciesData]:
+    """Data of each species as it is written: an element without a phase is refused, not taken for a gas."""
+    table = table_of(data)
+    return [table.find(parse_species(text, "g")) for text in species]
+
+
 def _composition_data(
     species: Texts, feed: Numbers, t: float, p: float, want: Want, options: Options, data: Grid | None
 ) -> Result:
     read = _all_reactions(species)
+    _data_of(species, data)
     found = equilibrium(read, feed, "data", options, data)
     return wanted(read, found.solve_telling(State("P", t, p=p)), want)
 
@@ -77,117 +81,21 @@ def _adiabatic(
 ) -> Result:
     read = _all_reactions(species)
     found = equilibrium(read, feed, "data", options, data)
-    balance = _Balance(found, [table_of(data).find(s) for s in read.species], p, extrapolates(options))
+    beyond = equilibrium(read, feed, "data", {"extrapolate": "yes"}, data).constants
+    known = _data_of(species, data)
+    balance = EnthalpyBalance(found, beyond, known, p, extrapolate=extrapolates(options))
     t = balance.temperature(t_feed)
-    if want.word == "t":
-        if balance.jumps_at(t):
-            tell([f"a phase is changing at {t:.6g} K, in part: the feed has not the enthalpy for all of it"])
-        else:
-            found.solve_telling(State("P", t, p=p))
-        return t
     if balance.jumps_at(t):
-        raise NoAnswerError(
-            f"at the adiabatic temperature, {t:.6g} K, a phase is changing in part, and T and P do not tell "
-            "how far; ask for T alone"
-        )
-    return wanted(read, found.solve_telling(State("P", t, p=p)), want)
-
-
-class _Balance:
-    """The enthalpy at equilibrium less that of the feed, as a function of temperature [kJ].
-
-    At constant pressure the enthalpy at equilibrium rises with temperature (H. B. Callen, Thermodynamics,
-    2nd ed., 1985, ch. 8: stability), so it meets that of the feed once, on a slope or in a jump.
-    """
-
-    def __init__(self, found: Equilibrium, known: Sequence[SpeciesData], p: float, extrapolate: bool) -> None:
-        self.found, self.known, self.p, self.extrapolate = found, known, p, extrapolate
-        self.seen: dict[float, float] = {}
-        starts, ends = [d.t_min for d in known], [d.t_max for d in known]
-        self.low, self.high = (min(starts), max(ends)) if extrapolate else (max(starts), min(ends))
-        if not self.low < self.high:
-            raise MissingDataError(f"the data of these species share no temperature: {self._ends()}")
-        self.before = 0.0
-
-    def _ends(self) -> str:
-        first = max(self.known, key=lambda d: d.t_min)
-        last = min(self.known, key=lambda d: d.t_max)
-        return f"those of {first.key} begin at {first.t_min:g} K, those of {last.key} end at {last.t_max:g} K"
-
-    def _enthalpy(self, n: Sequence[float], t: float) -> float:
-        return math.fsum(
-            amount * data.h(t, extrapolate=self.extrapolate)
-            for amount, data in zip(n, self.known, strict=True)
-            if amount > 0.0
-        )
-
-    def gain(self, t: float) -> float:
-        """Enthalpy at equilibrium at T less that of the feed. [kJ]."""
-        if t not in self.seen:
-            n = self.found.solve(State("P", t, p=self.p)).n
-            self.seen[t] = self._enthalpy(n, t) - self.before
-        return self.seen[t]
-
-    def temperature(self, t_feed: float) -> float:
-        """Where the enthalpy is that of the feed. [K].
-
-        Raises
-        ------
-        MissingDataError
-            If that lies outside the range of the data.
-        """
-        from scipy.optimize import brentq
-
-        self.before = self._enthalpy(self.found.feed, t_feed)
-        below, above = self._bracket(min(max(t_feed, self.low), self.high))
-        if below == above:
-            return below
-        try:
-            return float(brentq(self.gain, below, above, xtol=1e-9, rtol=1e-13, maxiter=200))
-        except NoAnswerError:
-            return self._by_halves()
-
-    def _bracket(self, t: float) -> tuple[float, float]:
-        """Two temperatures between which the balance closes, from the feed's outwards."""
-        gain = self.gain(t)
-        rising = gain < 0.0
-        while gain != 0.0:
-            end = self.high if rising else self.low
-            if t == end:
-                side = "above" if rising else "below"
-                raise MissingDataError(
-                    f"the adiabatic temperature lies {side} {end:g} K, where the data end: {self._ends()}"
-                )
-            last, t = t, min(t * _STEP, end) if rising else max(t / _STEP, end)
-            gain = self.gain(t)
-            if (gain < 0.0) is not rising:
-                return (last, t) if rising else (t, last)
-        return t, t
-
-    def _by_halves(self) -> float:
-        """The same where a pure phase changes: at that temperature itself there may be no answer."""
-        below = max(t for t, gain in self.seen.items() if gain < 0.0)
-        above = min(t for t, gain in self.seen.items() if gain >= 0.0)
-        while above - below > 1e-12 * above:
-            middle = 0.5 * (below + above)
-            try:
-                if self.gain(middle) < 0.0:
-                    below = middle
-                else:
-                    above = middle
-            except NoAnswerError:
-                return middle
-        return 0.5 * (below + above)
-
-    def jumps_at(self, t: float) -> bool:
-        """Whether the enthalpy passes that of the feed in a jump there."""
-        try:
-            span = abs(self.gain(t * (1.0 + _NEAR)) - self.gain(t * (1.0 - _NEAR)))
-        except (NoAnswerError, MissingDataError):
-            return False
-        # Between the two, Cp of the whole feed, with reaction, would have to be beyond any real one.
-        scale = math.fsum(self.found.feed) * t * 2.0 * _NEAR
-        return span > _STEEPEST * scale
+        if want.word != "t":
+            raise NoAnswerError(
+                f"at the adiabatic temperature, {t:.6g} K, a phase is changing in part, and T and P do not "
+                "tell how far; ask for T alone"
+            )
+        tell([f"a phase is changing at {t:.6g} K, in part: the feed has not the enthalpy for all of it"])
+        return t
+    solution = balance.solution(t)
+    tell((solution.method, *balance.notes(t), *solution.notes))
+    return t if want.word == "t" else wanted(read, solution, want)
 
 
 FUNCTIONS: Final = (

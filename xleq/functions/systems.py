@@ -51,6 +51,8 @@ class System:
         Number of species in the user's list.
     notes : tuple of str
         What a checker should know: reactions whose elements could not be checked.
+    derived : bool
+        Whether the reactions were found from the elements, so that none of them can be misspelt.
     """
 
     fluid: Fluid
@@ -62,6 +64,7 @@ class System:
     formulas: tuple[Mapping[str, Fraction] | None, ...] | None
     n_listed: int
     notes: tuple[str, ...]
+    derived: bool = False
 
     def index(self, text: str) -> int:
         """Place of a species in the list.
@@ -95,7 +98,7 @@ class System:
             amounts = amounts[:n]  # a range drawn longer than its list, as that of the species may be
         if len(amounts) != n:
             raise InputError(f"{n} species but {len(amounts)} amounts; give one amount a species")
-        for i, amount in enumerate(amounts):
+        for i, amount in enumerate(() if self.derived else amounts):
             if amount == 0.0 and not any(row[i] for row in self.nu):
                 raise InputError(
                     f"{self.names[i]} takes part in no reaction and has no feed; "

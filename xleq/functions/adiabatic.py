@@ -1,0 +1,213 @@
+"""The temperature at which an equilibrium has the enthalpy of its feed."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import replace
+from typing import Final
+
+from xleq.equilibrium import Solution, State, solve
+from xleq.errors import MissingDataError, NoAnswerError
+from xleq.functions.conditions import Constants, Equilibrium
+from xleq.thermo import SpeciesData
+
+#: Factor by which the search goes on from the temperature of the feed.
+_STEP: Final = 1.3
+#: A jump of the enthalpy is told from a slope by this relative step of T and this heat capacity [kJ/(mol K)].
+_NEAR: Final = 1e-7
+_STEEPEST: Final = 1000.0
+#: What is added to G/(R T) of a pure phase that is to stay away; whether it does is looked at.
+_NEVER: Final = 300.0
+
+
+class EnthalpyBalance:
+    """The enthalpy at equilibrium less that of the feed, as a function of temperature [kJ].
+
+    At constant pressure the enthalpy at equilibrium rises with temperature (H. B. Callen, Thermodynamics,
+    2nd ed., 1985, ch. 8: stability), so it meets that of the feed once, on a slope or in a jump. Where the
+    data of a pure phase end, the phase is left out beyond, provided that it is absent at that end.
+
+    Parameters
+    ----------
+    found : Equilibrium
+        With constants from formation data.
+    beyond : Constants
+        The same constants outside the range of the data too.
+    known : sequence [n_species] of SpeciesData
+    p : float
+        Pressure. [bar]
+    extrapolate : bool
+        Whether data may be used outside their range; then no phase is left out.
+    """
+
+    def __init__(
+        self,
+        found: Equilibrium,
+        beyond: Constants,
+        known: Sequence[SpeciesData],
+        p: float,
+        *,
+        extrapolate: bool,
+    ) -> None:
+        self.found, self.beyond, self.known, self.p, self.extrapolate = found, beyond, known, p, extrapolate
+        pairs = list(zip(known, found.read.phases, strict=True))
+        self.pure = [] if extrapolate else [i for i, (_, phase) in enumerate(pairs) if phase == "pure"]
+        self.fluid = [data for data, phase in pairs if phase == "fluid"]
+        # Without fluid the solver has its own refusal.
+        ends = [(d.t_min, d.t_max) for d in self.fluid] or [(d.t_min, d.t_max) for d in known]
+        if extrapolate:
+            self.low, self.high = min(a for a, _ in ends), max(b for _, b in ends)
+        else:
+            self.low, self.high = max(a for a, _ in ends), min(b for _, b in ends)
+        if not self.low < self.high:
+            raise MissingDataError(f"the data of these species share no temperature: {self._ends()}")
+        self.before = 0.0
+        self.seen: dict[float, float] = {}
+
+    def _ends(self) -> str:
+        first = max(self.fluid or self.known, key=lambda d: d.t_min)
+        last = min(self.fluid or self.known, key=lambda d: d.t_max)
+        return f"those of {first.key} begin at {first.t_min:g} K, those of {last.key} end at {last.t_max:g} K"
+
+    def solution(self, t: float) -> Solution:
+        """The equilibrium at a temperature, without the pure phases that have no data there.
+
+        Raises
+        ------
+        MissingDataError
+            If one of them cannot be absent.
+        NoAnswerError
+            If there is no certified equilibrium.
+        """
+        state = State("P", t, p=self.p)
+        away = [i for i in self.pure if not self.known[i].t_min <= t <= self.known[i].t_max]
+        if not away:
+            return self.found.solve(state)
+        read = self.found.read
+        ln_k = tuple(
+            value - _NEVER * float(sum(row[i] for i in away))
+            for value, row in zip(self.beyond.at(state), read.nu, strict=True)
+        )
+        problem_here = replace(self.found, constants=Constants(lambda _: ln_k)).problem(state)
+        solution = solve(problem_here).require()
+        for i in away:
+            if solution.n[i] > 0.0:
+                self.known[i].h(t)  # raises, with the range
+        return solution
+
+    def _enthalpy(self, n: Sequence[float], t: float) -> float:
+        return math.fsum(
+            amount * data.h(t, extrapolate=self.extrapolate)
+            for amount, data in zip(n, self.known, strict=True)
+            if amount > 0.0
+        )
+
+    def gain(self, t: float) -> float:
+        """Enthalpy at equilibrium at a temperature less that of the feed [kJ]."""
+        if t not in self.seen:
+            self.seen[t] = self._enthalpy(self.solution(t).n, t) - self.before
+        return self.seen[t]
+
+    def temperature(self, t_feed: float) -> float:
+        """Where the enthalpy is that of the feed [K].
+
+        Parameters
+        ----------
+        t_feed : float
+            Temperature of the feed. [K]
+
+        Raises
+        ------
+        MissingDataError
+            If it lies outside the range of the data, or a phase whose data end before is still there.
+        NoAnswerError
+            If there is no certified equilibrium on the way.
+        """
+        from scipy.optimize import brentq
+
+        self.before = self._enthalpy(self.found.feed, t_feed)
+        below, above = self._bracket(min(max(t_feed, self.low), self.high))
+        if below == above:
+            return below
+        try:
+            t = float(brentq(self.gain, below, above, xtol=1e-9, rtol=1e-13, maxiter=200))
+        except NoAnswerError:
+            t = self._by_halves()
+        self._check_left_out(t)
+        return t
+
+    def _bracket(self, t: float) -> tuple[float, float]:
+        """Two temperatures between which the balance closes, from the feed's outwards."""
+        gain = self.gain(t)
+        rising = gain < 0.0
+        while gain != 0.0:
+            end = self.high if rising else self.low
+            if t == end:
+                side = "above" if rising else "below"
+                raise MissingDataError(
+                    f"the adiabatic temperature lies {side} {end:g} K, where the data end: {self._ends()}"
+                )
+            last, t = t, self._next(t, rising)
+            gain = self.gain(t)
+            if (gain < 0.0) is not rising:
+                return (last, t) if rising else (t, last)
+        return t, t
+
+    def _next(self, t: float, rising: bool) -> float:
+        """The next temperature of the search; it stops where the data of a pure phase end."""
+        ends = [end for i in self.pure for end in (self.known[i].t_min, self.known[i].t_max)]
+        if rising:
+            return min(t * _STEP, self.high, *(end for end in ends if end > t))
+        return max(t / _STEP, self.low, *(end for end in ends if end < t))
+
+    def _by_halves(self) -> float:
+        """The same where a pure phase changes: at that temperature itself there may be no answer."""
+        below = max(t for t, gain in self.seen.items() if gain < 0.0)
+        above = min(t for t, gain in self.seen.items() if gain >= 0.0)
+        while above - below > 1e-12 * above:
+            middle = 0.5 * (below + above)
+            try:
+                if self.gain(middle) < 0.0:
+                    below = middle
+                else:
+                    above = middle
+            except NoAnswerError:
+                return middle
+        return 0.5 * (below + above)
+
+    def jumps_at(self, t: float) -> bool:
+        """Whether the enthalpy passes that of the feed in a jump there."""
+        try:
+            span = abs(self.gain(t * (1.0 + _NEAR)) - self.gain(t * (1.0 - _NEAR)))
+        except (NoAnswerError, MissingDataError):
+            return False  # at the very end of the data
+        return span > _STEEPEST * math.fsum(self.found.feed) * t * 2.0 * _NEAR
+
+    def _beyond_end(self, t: float) -> list[tuple[SpeciesData, int, float]]:
+        """Pure phases that are without data at a temperature or end there, with their place and the end."""
+        found = []
+        for i in self.pure:
+            data = self.known[i]
+            if t > data.t_max * (1.0 - _NEAR):
+                found.append((data, i, data.t_max))
+            elif t < data.t_min * (1.0 + _NEAR):
+                found.append((data, i, data.t_min))
+        return found
+
+    def _check_left_out(self, t: float) -> None:
+        for data, i, end in self._beyond_end(t):
+            if self.low <= end <= self.high and self.solution(end).n[i] > 0.0:
+                raise MissingDataError(
+                    f"{data.key} is still there at {end:g} K, where its data end; the adiabatic temperature "
+                    "lies beyond: give data for it, or allow extrapolation (extrapolate=yes)"
+                )
+
+    def notes(self, t: float) -> list[str]:
+        """What a checker should know of the data at a temperature: phases left out for lack of them."""
+        left_out = self._beyond_end(t)
+        said = [
+            f"{d.key} left out: its data end at {end:g} K, and it is absent there" for d, _, end in left_out
+        ]
+        kept = [d.key for d, _, _ in left_out]
+        return said + [n for n in self.found.constants.notes(t) if n.split(" ")[0] not in kept]
