@@ -83,7 +83,7 @@ def install() -> Any:
         "pythoncom",
         __file__="",
         CoInitialize=lambda: None,
-        TypeIIDs={"IDispatch": type(None)},
+        TypeIIDs={"IDispatch": ComError},
         IID_IDispatch="IDispatch",
         IID_IEnumVARIANT="IEnumVARIANT",
         ole_error=ComError,
