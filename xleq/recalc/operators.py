@@ -70,12 +70,14 @@ def divide(a: Value, b: Value) -> Value:
 
 
 def power(a: Value, b: Value) -> Value:
-    """Power of two values; 0^0 is #NUM!.
+    """Power of two values; 0^0 is #NUM!, and a negative number has odd roots.
 
     Examples
     --------
-    >>> power(2.0, 10.0), power(0.0, 0.0).code, power(-8.0, 1 / 3).code, power(0.0, -1.0).code
-    (1024.0, '#NUM!', '#NUM!', '#DIV/0!')
+    >>> power(2.0, 10.0), power(-8.0, 1 / 3)
+    (1024.0, -2.0)
+    >>> power(0.0, 0.0).code, power(-8.0, 0.3).code, power(0.0, -1.0).code
+    ('#NUM!', '#NUM!', '#DIV/0!')
     """
     x, y = to_number(a), to_number(b)
     if type(x) is not float:
@@ -87,11 +89,14 @@ def power(a: Value, b: Value) -> Value:
             return CellError("#NUM!", "zero to the power zero")
         return 0.0 if y > 0.0 else _DIVIDED
     try:
-        return math.pow(x, y)
+        if x > 0.0 or y == math.trunc(y):
+            return math.pow(x, y)
+        root = round(1.0 / y)
+        if root % 2 and near(root * y, 1.0):
+            return -math.pow(-x, y)
     except OverflowError:
         return _TOO_LARGE
-    except ValueError:
-        return CellError("#NUM!", "a negative number to a power that is not whole")
+    return CellError("#NUM!", "a negative number to a power that is neither whole nor an odd root")
 
 
 def join(a: Value, b: Value) -> Value:
