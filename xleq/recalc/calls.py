@@ -117,7 +117,7 @@ def omitted(native: Native, index: int) -> Any:
 def prepared(parameter: Parameter, run: Run) -> Callable[[Context], Any]:
     """The argument as its kind wants it; scalar kinds are converted later, for they may be arrays."""
     kind = parameter.kind
-    if kind in SCALAR_KINDS or kind == "operand":
+    if kind in SCALAR_KINDS or kind in ("operand", "matrix"):
         return run
     if kind == "array":
         return lambda at: block(at, run(at))

@@ -245,7 +245,7 @@ class Compiler:
 
     def argument(self, kind: str, node: tree.Node, array: bool, scope: Scope) -> Run:
         """An argument compiled as its kind wants it."""
-        if kind == "array":
+        if kind in ("array", "matrix"):
             return self.operand(node, True, scope)
         if kind in ("list", "range", "operand", "lazy"):
             return self.operand(node, array, scope)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import Any
 
 import pytest
@@ -124,3 +125,32 @@ def test_pairs_leave_out_places_where_one_is_no_number(evaluate: Any) -> None:
     assert evaluate("SLOPE(B1:B5,A1:A5)", cells) == pytest.approx(2.0)
     assert evaluate("CORREL(A1:A5,B1:B4)", cells) == "#N/A"
     assert evaluate("SUMXMY2(A1:A5,B1:B5)", cells) == 1.0 + 4.0 + 16.0
+
+
+@pytest.mark.parametrize(
+    ("formula", "value"),
+    [
+        # which arguments take arrays in a plain formula: those of the array functions do, of SUM and its kin not
+        ("SUM(A1:A5*2)", 6.0),
+        ("MAX(A1:A5*2)", 6.0),
+        ("LARGE(A1:A5*2,1)", 6.0),
+        ("PERCENTILE(A1:A5*2,0.5)", 6.0),
+        ("SUMPRODUCT(A1:A5*2)", 30.0),
+        ("MDETERM(A1:A1*2)", 2.0),
+        ("AGGREGATE(14,6,A1:A5/(A1:A5<5),1)", 4.0),
+        ("SUMX2PY2(A1:A5*1,A1:A5*0)", 55.0),
+    ],
+)
+def test_a_plain_formula_meets_ranges_as_excel_does(formula: str, value: float) -> None:
+    from datetime import datetime
+
+    from xleq.cells import CellAddress
+    from xleq.recalc import recalculate
+    from xleq.workbook.records import Book, Formula, Sheet
+
+    sheet = Sheet("S", 0, "")
+    for i in range(1, 6):
+        sheet.stored[(i, 1)] = float(i)
+    sheet.formulas[(3, 3)] = Formula(formula, (3, 3))
+    done = recalculate(Book(Path(), (sheet,)), {}, now=datetime(2026, 1, 1), trust_fresh=True)
+    assert done.values[CellAddress("S", 3, 3)] == value

@@ -16,6 +16,7 @@ list       a cell value (given directly) or an `Array` (from a reference or an a
            which treat the two differently; the expression keeps the formula's own mode
 range      a `Ref`; anything else ends the call with #VALUE!
 operand    whatever comes: cell value, `Array` or `Ref`, not read and not converted
+matrix     the same, but the expression is evaluated as an array
 lazy       a function without arguments that evaluates the expression when it is called
 =========  =====================================================================================
 
@@ -41,7 +42,9 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any, Final, Literal, TypeVar, cast
 
-Kind = Literal["number", "text", "logical", "value", "any", "array", "list", "range", "operand", "lazy"]
+Kind = Literal[
+    "number", "text", "logical", "value", "any", "array", "list", "range", "operand", "matrix", "lazy"
+]  # fmt: skip
 SCALAR_KINDS: Final = frozenset({"number", "text", "logical", "value", "any"})
 
 _F = TypeVar("_F", bound=Callable[..., Any])

@@ -148,13 +148,13 @@ def modes_of(numbers: list[float]) -> list[float]:
     return [x for x, n in counts.items() if n == most]
 
 
-@native("MODE MODE.SNGL", "list list*")
+@native("MODE MODE.SNGL", "array array*")
 def mode(*arguments: Argument) -> float:
     """Most frequent number."""
     return modes_of(numbers_of(arguments))[0]
 
 
-@native("MODE.MULT", "list list*")
+@native("MODE.MULT", "array array*")
 def mode_mult(*arguments: Argument) -> Array:
     """The most frequent numbers, as a column."""
     return Array.column(modes_of(numbers_of(arguments)))
@@ -181,8 +181,8 @@ def harmean(*arguments: Argument) -> float:
     return len(numbers) / sum(1.0 / x for x in numbers)
 
 
-@native("TRIMMEAN", "array number")
-def trimmean(array: Array, share: float) -> float:
+@native("TRIMMEAN", "list number")
+def trimmean(array: Argument, share: float) -> float:
     """Mean without a share of the numbers, half of it at either end.
 
     Examples
@@ -190,7 +190,7 @@ def trimmean(array: Array, share: float) -> float:
     >>> trimmean(Array.row([4.0, 5.0, 6.0, 7.0, 2.0, 3.0, 4.0, 5.0, 1.0, 2.0, 3.0]), 0.2)
     3.7777777777777777
     """
-    numbers = sorted(array_numbers(array))
+    numbers = sorted(numbers_of([array]))
     if not 0.0 <= share < 1.0 or not numbers:
         raise Fail(NUM)
     cut = math.floor(len(numbers) * share / 2.0 + 1e-12)

@@ -8,7 +8,7 @@ from bisect import bisect_left
 from xleq.cells import DIV0, NA, NUM, VALUE
 from xleq.recalc.context import Context
 from xleq.recalc.natives.arithmetic.rounding import floor15
-from xleq.recalc.natives.gather import SMALL, array_numbers, number_vector, places_in, vector_of
+from xleq.recalc.natives.gather import SMALL, array_numbers, number_vector, numbers_of, places_in, vector_of
 from xleq.recalc.natives.statistics.spread import Numbers
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Array, Fail, Ref
@@ -92,26 +92,26 @@ def percentile_exc_of(numbers: Numbers, share: float) -> float:
     return _at(numbers, max(place - 1.0, 0.0))
 
 
-@native("PERCENTILE PERCENTILE.INC", "array number")
-def percentile(array: Array, share: float) -> float:
+@native("PERCENTILE PERCENTILE.INC", "list number")
+def percentile(array: Argument, share: float) -> float:
     """Percentile, share from 0 to 1."""
     return percentile_of(vector_of([array]), share)
 
 
-@native("PERCENTILE.EXC", "array number")
-def percentile_exc(array: Array, share: float) -> float:
+@native("PERCENTILE.EXC", "list number")
+def percentile_exc(array: Argument, share: float) -> float:
     """Percentile, share between 0 and 1."""
     return percentile_exc_of(vector_of([array]), share)
 
 
-@native("QUARTILE QUARTILE.INC", "array number")
-def quartile(array: Array, quarter: float) -> float:
+@native("QUARTILE QUARTILE.INC", "list number")
+def quartile(array: Argument, quarter: float) -> float:
     """Quartile 0 to 4."""
     return percentile_of(vector_of([array]), math.trunc(quarter) / 4.0)
 
 
-@native("QUARTILE.EXC", "array number")
-def quartile_exc(array: Array, quarter: float) -> float:
+@native("QUARTILE.EXC", "list number")
+def quartile_exc(array: Argument, quarter: float) -> float:
     """Quartile 1 to 3."""
     return percentile_exc_of(vector_of([array]), math.trunc(quarter) / 4.0)
 
@@ -136,26 +136,26 @@ def _cut(share: float, digits: float) -> float:
     return floor15(share * scale) / scale
 
 
-@native("PERCENTRANK PERCENTRANK.INC", "array number number~")
-def percentrank(array: Array, x: float, digits: float = 3.0) -> float:
+@native("PERCENTRANK PERCENTRANK.INC", "list number number~")
+def percentrank(array: Argument, x: float, digits: float = 3.0) -> float:
     """Share of the numbers below x, ends included, cut to some digits."""
-    ordered = sorted(array_numbers(array))
+    ordered = sorted(numbers_of([array]))
     place = _place_of(ordered, x)
     return _cut(1.0 if len(ordered) == 1 else place / (len(ordered) - 1), digits)
 
 
-@native("PERCENTRANK.EXC", "array number number~")
-def percentrank_exc(array: Array, x: float, digits: float = 3.0) -> float:
+@native("PERCENTRANK.EXC", "list number number~")
+def percentrank_exc(array: Argument, x: float, digits: float = 3.0) -> float:
     """Share of the numbers below x, ends excluded, cut to some digits."""
-    ordered = sorted(array_numbers(array))
+    ordered = sorted(numbers_of([array]))
     return _cut((_place_of(ordered, x) + 1.0) / (len(ordered) + 1), digits)
 
 
-@native("FREQUENCY", "array array")
-def frequency(data: Array, bins: Array) -> Array:
+@native("FREQUENCY", "list list")
+def frequency(data: Argument, bins: Argument) -> Array:
     """How many numbers fall at or below each bin and above the next lower one; the last above all bins."""
-    limits = array_numbers(bins)
-    numbers = array_numbers(data)
+    limits = numbers_of([bins])
+    numbers = numbers_of([data])
     if not limits:
         return Array.column([float(len(numbers)), 0.0])
     counts = [0.0] * (len(limits) + 1)

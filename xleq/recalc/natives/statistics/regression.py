@@ -128,8 +128,12 @@ def _logs(y: NDArray[np.float64]) -> NDArray[np.float64]:
     return np.log(y)
 
 
-def _given(array: Array | Any) -> Array | None:
-    return array if isinstance(array, Array) else None
+def _array(argument: Any) -> Array:
+    return argument if isinstance(argument, Array) else Array(1, 1, [argument])
+
+
+def _given(argument: Any) -> Array | None:
+    return None if argument is MISSING else _array(argument)
 
 
 def _report(f: Fit, constant: bool, statistics: bool, exponential: bool) -> Array:
@@ -158,18 +162,18 @@ def _report(f: Fit, constant: bool, statistics: bool, exponential: bool) -> Arra
     return Array.of_rows(rows)
 
 
-@native("LINEST", "array array? any? any?")
-def linest(ys: Array, xs: Any = MISSING, constant: Any = MISSING, statistics: Any = MISSING) -> Array:
+@native("LINEST", "list list? any? any?")
+def linest(ys: Any, xs: Any = MISSING, constant: Any = MISSING, statistics: Any = MISSING) -> Array:
     """Coefficients of the linear fit, last variable first, and with statistics four more rows."""
-    y, x, _ = _layout(ys, _given(xs))
+    y, x, _ = _layout(_array(ys), _given(xs))
     with_constant = _logical(constant, True)
     return _report(fit(y, x, with_constant), with_constant, _logical(statistics, False), False)
 
 
-@native("LOGEST", "array array? any? any?")
-def logest(ys: Array, xs: Any = MISSING, constant: Any = MISSING, statistics: Any = MISSING) -> Array:
+@native("LOGEST", "list list? any? any?")
+def logest(ys: Any, xs: Any = MISSING, constant: Any = MISSING, statistics: Any = MISSING) -> Array:
     """Bases and factor of the exponential fit, last variable first, and with statistics four more rows."""
-    y, x, _ = _layout(ys, _given(xs))
+    y, x, _ = _layout(_array(ys), _given(xs))
     with_constant = _logical(constant, True)
     return _report(fit(_logs(y), x, with_constant), with_constant, _logical(statistics, False), True)
 
@@ -203,13 +207,13 @@ def _predict(ys: Array, xs: Any, new: Any, constant: Any, exponential: bool) -> 
     return Array(shape[0], shape[1], values.tolist())
 
 
-@native("TREND", "array array? array? any?")
-def trend(ys: Array, xs: Any = MISSING, new: Any = MISSING, constant: Any = MISSING) -> Array:
+@native("TREND", "list list? list? any?")
+def trend(ys: Any, xs: Any = MISSING, new: Any = MISSING, constant: Any = MISSING) -> Array:
     """The linear fit at new points."""
-    return _predict(ys, xs, new, constant, False)
+    return _predict(_array(ys), xs, new, constant, False)
 
 
-@native("GROWTH", "array array? array? any?")
-def growth(ys: Array, xs: Any = MISSING, new: Any = MISSING, constant: Any = MISSING) -> Array:
+@native("GROWTH", "list list? list? any?")
+def growth(ys: Any, xs: Any = MISSING, new: Any = MISSING, constant: Any = MISSING) -> Array:
     """The exponential fit at new points."""
-    return _predict(ys, xs, new, constant, True)
+    return _predict(_array(ys), xs, new, constant, True)

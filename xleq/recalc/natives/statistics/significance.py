@@ -5,12 +5,12 @@ from __future__ import annotations
 import math
 
 from xleq.cells import DIV0, NA, NUM
-from xleq.recalc.natives.gather import array_numbers, guarded, number_pairs, ratio
+from xleq.recalc.natives.gather import array_numbers, guarded, number_pairs, numbers_of, ratio
 from xleq.recalc.natives.statistics.continuous import f_dist, f_dist_rt, gamma_above, t_above
 from xleq.recalc.natives.statistics.normal import normal_below
 from xleq.recalc.natives.statistics.spread import variance
 from xleq.recalc.natives.table import native
-from xleq.recalc.operands import Array, Fail
+from xleq.recalc.operands import Argument, Array, Fail
 
 
 def _paired(xs: Array, ys: Array) -> tuple[float, float]:
@@ -74,11 +74,11 @@ def chisq_test(actual: Array, expected: Array) -> float:
     return gamma_above(total / 2.0, freedom / 2.0)
 
 
-@native("Z.TEST ZTEST", "array number number?")
+@native("Z.TEST ZTEST", "list number number?")
 @guarded
-def z_test(array: Array, x: float, deviation: float | None = None) -> float:
+def z_test(array: Argument, x: float, deviation: float | None = None) -> float:
     """Chance of a mean above that of the numbers where the true mean is x."""
-    numbers = array_numbers(array)
+    numbers = numbers_of([array])
     if not numbers:
         raise Fail(NA)
     if deviation is not None and deviation <= 0.0:

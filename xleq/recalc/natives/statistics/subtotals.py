@@ -73,7 +73,7 @@ def subtotal(context: Context, function: float, *refs: Ref) -> float:
     return call(Array.column(values))
 
 
-@native("AGGREGATE", "number number operand operand*", context=True)
+@native("AGGREGATE", "number number matrix matrix*", context=True)
 def aggregate(context: Context, function: float, options: float, *operands: Any) -> float:
     """One of nineteen statistics, without hidden rows, errors or nested subtotals as the options say."""
     number, option = math.trunc(function), math.trunc(options)
