@@ -17,6 +17,8 @@ from xleq.cells import BLANK
 from xleq.errors import BookError
 from xleq.workbook import Results, SheetResults, open_book, write_book
 
+CORPUS = Path(__file__).resolve().parents[2].parent / "shared" / "corpus"
+FILES = sorted(CORPUS.rglob("*.xlsx"))
 #: No file may take longer. [s]
 PATIENCE = 10.0
 TOKENS = [
@@ -97,14 +99,13 @@ def bent(data: bytes, chance: random.Random) -> bytes:
 MUTATIONS = (flipped, cut, dropped, bent, bent, bent)
 
 
-def try_all(folder: Path, n: int, seed: int) -> tuple[int, int]:
+def try_all(folder: Path, originals: list[bytes], n: int, seed: int) -> tuple[int, int]:
     """Open and write `n` mutated books; how many were written, how many refused."""
-    data = seed_book(folder)
     chance = random.Random(seed)
     path, out = folder / "mutated.xlsx", folder / "out.xlsx"
     written = 0
     for number in range(n):
-        path.write_bytes(chance.choice(MUTATIONS)(data, chance))
+        path.write_bytes(chance.choice(MUTATIONS)(chance.choice(originals), chance))
         begun, message = time.monotonic(), ""
         try:
             book = open_book(path)
@@ -134,13 +135,40 @@ def try_all(folder: Path, n: int, seed: int) -> tuple[int, int]:
 
 
 def test_a_hundred_mutated_books_are_written_or_refused(tmp_path: Path) -> None:
-    written, refused = try_all(tmp_path, 100, seed=1)
+    written, refused = try_all(tmp_path, [seed_book(tmp_path)], 100, seed=1)
     assert written > 10
     assert refused > 10
 
 
 @pytest.mark.slow
 def test_a_thousand_mutated_books_are_written_or_refused(tmp_path: Path) -> None:
-    written, refused = try_all(tmp_path, 1000, seed=2)
+    written, refused = try_all(tmp_path, [seed_book(tmp_path)], 1000, seed=2)
     assert written > 100
     assert refused > 100
+
+
+def opens(path: Path) -> bool:
+    try:
+        return bool(open_book(path).sheets)
+    except BookError:
+        return False
+
+
+@pytest.mark.slow
+@pytest.mark.skipif(not FILES, reason="no corpus of workbooks beside the project")
+def test_a_thousand_mutated_books_of_the_corpus_are_written_or_refused(tmp_path: Path) -> None:
+    small = [data for path in FILES if len(data := path.read_bytes()) < 60_000 and opens(path)]
+    written, refused = try_all(tmp_path, small, 1000, seed=3)
+    assert written > 100
+    assert refused > 100
+
+
+def test_a_list_of_members_that_runs_past_its_end_is_refused(tmp_path: Path) -> None:
+    data = bytearray(seed_book(tmp_path))
+    path = tmp_path / "mutated.xlsx"
+    last = data.rindex(b"PK\x01\x02")
+    data[last + 30] = 17  # length of an extra field that would lie in the end record
+    path.write_bytes(data)
+    with pytest.raises(BookError, match=r"damaged list of members|zip archive"):
+        write_book(open_book(path), {}, tmp_path / "out.xlsx")
+    assert not (tmp_path / "out.xlsx").exists()

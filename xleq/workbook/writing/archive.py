@@ -8,7 +8,7 @@ from __future__ import annotations
 import struct
 import zlib
 from typing import IO, Final, NamedTuple
-from zipfile import ZIP_DEFLATED, ZipFile, ZipInfo
+from zipfile import ZIP_DEFLATED, BadZipFile, ZipFile, ZipInfo
 
 from xleq.errors import DamagedBookError
 
@@ -72,6 +72,20 @@ def copy_archive(source: ZipFile, into: IO[bytes], changed: dict[str, bytes]) ->
                 offset, info.CRC, info.compress_size, info.file_size, info.flag_bits
             )
     _write_directory(file, into, source, placed)
+    _look_again(into, source, placed)
+
+
+def _look_again(into: IO[bytes], source: ZipFile, placed: dict[str, _Placed]) -> None:
+    """Refuse a copy that does not read back as what was meant: the source's headers were damaged then."""
+    wanted = [(name, placed[name].crc, placed[name].size) for name in source.namelist()]
+    into.flush()
+    try:
+        with ZipFile(into) as copy:
+            found = [(info.filename, info.CRC, info.file_size) for info in copy.infolist()]
+    except (BadZipFile, NotImplementedError, struct.error, ValueError) as error:
+        raise DamagedBookError(f"has a damaged list of members: {error}") from error
+    if found != wanted:
+        raise DamagedBookError("has a damaged list of members")
 
 
 def _copy(file: IO[bytes], into: IO[bytes], start: int, end: int) -> None:

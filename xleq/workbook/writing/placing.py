@@ -88,7 +88,7 @@ def _temporary(path: Path) -> Iterator[tuple[IO[bytes], Path]]:
     """A locked temporary file beside the target; it is gone afterwards unless it was renamed."""
     while True:
         name = _temporary_name(path)
-        with name.open("xb") as file:
+        with name.open("x+b") as file:
             try:
                 _lock(file)
                 if not _is_there(name, file):  # a neighbour took it for a stray before it was locked
