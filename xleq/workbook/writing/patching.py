@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import re
 from collections import defaultdict
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
+from heapq import merge
 from operator import itemgetter
 from typing import Final, NamedTuple
 from xml.parsers import expat
@@ -27,6 +28,9 @@ _TYPE: Final = re.compile(rb" (?:t|vm)=\"[^\"]*\"")
 _REF: Final = re.compile(rb"(\sref\s*=\s*)(?:\"[^\"]*\"|'[^']*')")
 _SPANS: Final = re.compile(rb"\sspans\s*=\s*(?:\"[^\"]*\"|'[^']*')")
 _DECLARED: Final = re.compile(r"^(<\?xml[^>]*?)\s+encoding\s*=\s*(?:\"[^\"]*\"|'[^']*')")
+
+
+_POSITION: Final = itemgetter(0, 1)
 
 
 class Piece(NamedTuple):
@@ -59,18 +63,28 @@ def patched(data: bytes, edits: dict[Place, Edit], part: str) -> bytes:
     for (row, column), edit in edits.items():
         by_row[row][column] = edit
     layout = scan(data, by_row.keys(), part)
-    pieces = [*_row_pieces(data, layout, by_row, part), *_dimension_piece(data, layout, edits)]
-    return _joined(data, pieces)
+    present = {row.number for row in layout.rows}
+    new_rows = {n: _to_create(row, n, part) for n, row in sorted(by_row.items()) if n not in present}
+    around = [*_dimension_piece(data, layout, edits), *_new_rows(data, layout, new_rows, part)]
+    # Pieces are joined as they come: at any time only a few of a hundred thousand are held.
+    return _joined(data, merge(_sorted(around), _row_pieces(data, layout, by_row, part), key=_POSITION))
 
 
-def _joined(data: bytes, pieces: list[Piece]) -> bytes:
-    """The bytes with pieces replaced; pieces at one place follow one another as they are listed."""
-    out: list[bytes] = []
+def _sorted(pieces: list[Piece]) -> list[Piece]:
+    """In the order of the bytes; pieces at one place follow one another as they are listed."""
+    return sorted(pieces, key=_POSITION)
+
+
+def _joined(data: bytes, pieces: Iterable[Piece]) -> bytes:
+    """The bytes with pieces, in their order, replaced."""
+    out = bytearray()
     at = 0
-    for piece in sorted(pieces, key=itemgetter(0, 1)):
-        out += (data[at : piece.start], piece.text)
-        at = piece.end
-    return b"".join((*out, data[at:]))
+    for start, end, text in pieces:
+        out += data[at:start]
+        out += text
+        at = end
+    out += data[at:]
+    return bytes(out)
 
 
 def in_utf8(data: bytes) -> bytes:
@@ -89,19 +103,19 @@ def in_utf8(data: bytes) -> bytes:
 def _row_pieces(
     data: bytes, layout: Layout, by_row: dict[int, dict[int, Edit]], part: str
 ) -> Iterator[Piece]:
-    """Replacements and insertions in the cell data."""
-    left = {number: dict(row) for number, row in by_row.items()}
+    """Replacements and insertions in the rows that are there, in the order of the bytes."""
+    seen: set[int] = set()
     for row in layout.rows:
         if row.number in by_row:
-            if row.number not in left:
+            if row.number in seen:
                 raise DamagedBookError(f"{part} lists row {row.number} twice")
-            wanted = left.pop(row.number)
-            yield from _existing_cells(data, row, wanted)
+            seen.add(row.number)
+            wanted = dict(by_row[row.number])
+            pieces = list(_existing_cells(data, row, wanted))
             wanted = _to_create(wanted, row.number, part)
             if wanted:
-                yield from _new_cells(data, layout, row, wanted, part)
-    new_rows = {number: _to_create(row, number, part) for number, row in left.items()}
-    yield from _new_rows(data, layout, {number: row for number, row in new_rows.items() if row}, part)
+                pieces = _sorted([*pieces, *_new_cells(data, layout, row, wanted, part)])
+            yield from pieces
 
 
 def _to_create(wanted: dict[int, Edit], row: int, part: str) -> dict[int, Edit]:
@@ -151,13 +165,14 @@ def _new_cells(data: bytes, layout: Layout, row: Row, wanted: dict[int, Edit], p
 
 def _new_rows(data: bytes, layout: Layout, rows: dict[int, dict[int, Edit]], part: str) -> Iterator[Piece]:
     """Insertions of rows that are not there."""
+    rows = {number: row for number, row in rows.items() if row}
     if not rows:
         return
     numbers = [row.number for row in layout.rows]
     if numbers != sorted(set(numbers)):
         raise DamagedBookError(f"{part} has its rows out of order, so that none can be put in")
     texts = {}
-    for number, wanted in sorted(rows.items()):
+    for number, wanted in rows.items():
         cells = (_new_cell(layout, number, c, edit, "") for c, edit in sorted(wanted.items()))
         texts[number] = b'<%brow r="%d">%b</%brow>' % (layout.prefix, number, b"".join(cells), layout.prefix)
     if layout.data.tag_end == layout.data.end:  # <sheetData/>
@@ -227,7 +242,7 @@ def _edited_by_parts(raw: bytes, edit: Edit) -> bytes:
         for start, end in old:
             pieces.append(Piece(start, end, value))
             value = b""
-    return _joined(raw, pieces)
+    return _joined(raw, _sorted(pieces))
 
 
 def _with_area(formula: bytes, area: Area) -> bytes:
