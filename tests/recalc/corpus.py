@@ -20,7 +20,7 @@ from pathlib import Path
 from xleq.cells import BLANK, CellAddress
 from xleq.errors import XleqError
 from xleq.recalc import recalculate
-from xleq.recalc.evaluate import agree, tolerance_of
+from xleq.recalc.sheets.evaluate import agree, tolerance_of
 from xleq.workbook import Book, FormulaKind, open_book
 
 CORPUS = Path(__file__).resolve().parents[3] / "shared" / "corpus"

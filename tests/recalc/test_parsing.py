@@ -9,8 +9,9 @@ import pytest
 
 from xleq.cells import NA, REF, column_letters
 from xleq.errors import BookError, FormulaError
-from xleq.recalc import tree
-from xleq.recalc.parse import parse, relative_key, row_template
+from xleq.recalc.syntax import tree
+from xleq.recalc.syntax.fills import relative_key, row_template
+from xleq.recalc.syntax.parse import parse
 from xleq.workbook import open_book
 
 CORPUS = Path(__file__).resolve().parents[3] / "shared" / "corpus"

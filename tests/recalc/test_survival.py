@@ -8,11 +8,11 @@ import pytest
 
 from tests.recalc.books import NOW, book
 from xleq.cells import BLANK, NA, CellError
-from xleq.recalc.columns import Unsupported
-from xleq.recalc.evaluate import Engine, Settings, single_value
 from xleq.recalc.natives import natives
 from xleq.recalc.operands import Array
-from xleq.recalc.parse import parse
+from xleq.recalc.sheets.columns import Unsupported
+from xleq.recalc.sheets.evaluate import Engine, Settings, single_value
+from xleq.recalc.syntax.parse import parse
 
 CELLS = {
     **{f"A{r}": r for r in range(1, 31)}, "B1": "x", "B2": True, "B3": NA, "B4": 2.5, "B5": "12", "B6": "",

@@ -68,7 +68,7 @@ class Context:
         self.array_mode = array_mode
         #: Values of LET names and LAMBDA parameters in scope, innermost last.
         self.locals: tuple[Operand | Missing, ...] = ()
-        #: What is known against the cells that were read (`xleq.recalc.evaluate`).
+        #: What is known against the cells that were read (`xleq.recalc.sheets.evaluate`).
         self.trust = 0
         #: The first of those cells that is held back: (sheet, row, column).
         self.cause: tuple[int, int, int] | None = None
@@ -134,7 +134,7 @@ class Context:
         Fail
             #VALUE! if it is not a function or takes another number of arguments.
         """
-        from xleq.recalc.lambdas import call_lambda
+        from xleq.recalc.program.lambdas import call_lambda
 
         return call_lambda(function, args)
 

@@ -7,17 +7,17 @@ from typing import TYPE_CHECKING, NamedTuple
 
 from xleq.cells import CellAddress
 from xleq.errors import FormulaError
-from xleq.recalc import tree
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.operands import Area, Ref
-from xleq.recalc.parse import parse
-from xleq.recalc.references import area_of
+from xleq.recalc.program.references import area_of
+from xleq.recalc.sheets.columns import Unsupported
+from xleq.recalc.syntax import tree
+from xleq.recalc.syntax.parse import parse
 from xleq.workbook import Area as BookArea
 from xleq.workbook import Book
 
 if TYPE_CHECKING:
-    from xleq.recalc.evaluate import Cell, Engine
+    from xleq.recalc.sheets.evaluate import Cell, Engine
 
 
 class Named(NamedTuple):
@@ -46,7 +46,7 @@ class Precedents:
     def __init__(self, book: Book) -> None:
         from datetime import datetime
 
-        from xleq.recalc.evaluate import Engine, Settings
+        from xleq.recalc.sheets.evaluate import Engine, Settings
 
         self._engine = Engine(book, {}, Settings(datetime(2000, 1, 1), check=False), {}, {})
 

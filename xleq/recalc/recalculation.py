@@ -15,8 +15,8 @@ from xleq.workbook import Area as BookArea
 from xleq.workbook import Book, Results, Sheet, SheetResults
 
 if TYPE_CHECKING:
-    from xleq.recalc.evaluate import Cell, Engine
     from xleq.recalc.operands import Array
+    from xleq.recalc.sheets.evaluate import Cell, Engine
 
 #: Worksheet functions by name in capitals. Each takes the list of its arguments: a value, a `Grid` where the
 #: argument is several cells, `MISSING` where it is left out; and gives a value or a `Grid`.
@@ -148,8 +148,8 @@ def recalculate(
     LimitError
         If it takes too long.
     """
-    from xleq.recalc.check import recheck
-    from xleq.recalc.evaluate import Engine, Settings
+    from xleq.recalc.sheets.check import recheck
+    from xleq.recalc.sheets.evaluate import Engine, Settings
 
     start = time.perf_counter()
     trust = book.calculation.full_calc_on_load if trust_fresh is None else trust_fresh
@@ -192,7 +192,7 @@ def _address(book: Book, cell: Cell) -> CellAddress:
 
 
 def _gathered(engine: Engine) -> Recalculation:
-    from xleq.recalc.evaluate import identical
+    from xleq.recalc.sheets.evaluate import identical
 
     book = engine.book
     found = Recalculation(n_formulas=sum(len(sheet.formulas) for sheet in book.sheets))
@@ -255,10 +255,10 @@ def evaluate_text(
     >>> evaluate_text("=1/0").reason
     'divided by zero'
     """
-    from xleq.recalc.columns import Blocked, Unsupported
-    from xleq.recalc.evaluate import Engine, Settings, single_value
     from xleq.recalc.operands import Array
-    from xleq.recalc.parse import parse
+    from xleq.recalc.sheets.columns import Blocked, Unsupported
+    from xleq.recalc.sheets.evaluate import Engine, Settings, single_value
+    from xleq.recalc.syntax.parse import parse
 
     if book is None:
         book = Book(Path(), (Sheet("Sheet1", 0, ""),))

@@ -12,7 +12,6 @@ from typing import Any, Final
 
 from xleq.cells import BLANK, MISSING, NUM, VALUE, CellError, Value
 from xleq.recalc.coerce import to_text
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.natives.arithmetic.sums import product, sum_
 from xleq.recalc.natives.criteria import read_criterion
@@ -20,6 +19,7 @@ from xleq.recalc.natives.statistics.averages import average, count, counta, max_
 from xleq.recalc.natives.statistics.spread import stdev, stdevp, var, varp
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Area, Array, Fail, Ref
+from xleq.recalc.sheets.columns import Unsupported
 
 _Test = Callable[[list[Value]], bool]
 

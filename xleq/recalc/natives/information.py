@@ -7,12 +7,12 @@ from typing import Final
 
 from xleq.cells import BLANK, MISSING, NA, VALUE, CellError, Missing, Value, address_text
 from xleq.recalc.coerce import to_number
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
-from xleq.recalc.lambdas import Lambda
 from xleq.recalc.natives.logic import term
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Area, Argument, Array, Fail, Operand, Ref
+from xleq.recalc.program.lambdas import Lambda
+from xleq.recalc.sheets.columns import Unsupported
 
 
 @native("ISBLANK", "any")

@@ -13,8 +13,8 @@ from xleq.recalc.coerce import to_logical, to_number
 from xleq.recalc.context import Context
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Array, Fail, Operand
-from xleq.recalc.operators import apply, stretched
-from xleq.recalc.references import contents, intersected
+from xleq.recalc.program.operators import apply, stretched
+from xleq.recalc.program.references import contents, intersected
 
 #: An expression that is evaluated when it is called, or nothing where none is written.
 Lazy = Callable[[], Operand] | Missing

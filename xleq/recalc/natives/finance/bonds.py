@@ -6,10 +6,10 @@ import math
 from collections.abc import Callable
 from dataclasses import dataclass
 
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.natives.finance.daycount import Calendar, checked_basis, checked_day, checked_frequency
 from xleq.recalc.natives.tools import tool
+from xleq.recalc.sheets.columns import Unsupported
 
 
 @dataclass(frozen=True, slots=True)

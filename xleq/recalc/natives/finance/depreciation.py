@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import math
 
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.natives.gather import guarded
 from xleq.recalc.natives.table import native
+from xleq.recalc.sheets.columns import Unsupported
 
 
 @native("SLN", "number number number")

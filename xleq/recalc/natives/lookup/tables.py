@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from xleq.cells import BLANK, NA, VALUE, CellError, Missing, Value
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.expressions import is_quick, regular_expression
 from xleq.recalc.natives.lookup import finding
 from xleq.recalc.natives.lookup.blocks import Block
 from xleq.recalc.natives.table import native
 from xleq.recalc.operands import Argument, Array, Fail, Operand
+from xleq.recalc.sheets.columns import Unsupported
 
 
 def _sought(wanted: Value | Missing) -> Value:

@@ -9,13 +9,13 @@ from typing import Final
 from xleq.cells import BLANK, CellError, Value
 from xleq.errors import FormulaError, InputError
 from xleq.recalc.coerce import to_text
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.formats import format_value
 from xleq.recalc.formats.numbers import exact_digits, rounded
 from xleq.recalc.natives.table import native
 from xleq.recalc.natives.text.characters import first_or_each, fitting
 from xleq.recalc.operands import Argument, Array, Fail, Operand
+from xleq.recalc.sheets.columns import Unsupported
 from xleq.recalc.texts import parse_number
 
 

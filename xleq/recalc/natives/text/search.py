@@ -5,12 +5,12 @@ from __future__ import annotations
 import re
 
 from xleq.cells import CALC, MISSING, NA, VALUE, CellError, Missing, Value
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.expressions import is_quick, regular_expression
 from xleq.recalc.natives.table import native
 from xleq.recalc.natives.text.characters import as_text, fitting, is_narrow, length, listed
 from xleq.recalc.operands import Array, Fail, Operand
 from xleq.recalc.patterns import has_wildcard, wildcard_position
+from xleq.recalc.sheets.columns import Unsupported
 
 
 def _start(within: str, start: float) -> int:

@@ -6,13 +6,13 @@ from collections.abc import Iterator, Mapping
 from typing import TYPE_CHECKING
 
 from xleq.cells import BLANK, MAX_COLUMN, MAX_ROW, CellError, Value, parse_address
-from xleq.recalc.columns import KEPT, Cells, Spot, Unsupported
 from xleq.recalc.operands import Area, Array, Operand, Ref
-from xleq.recalc.operators import stretched
+from xleq.recalc.program.operators import stretched
+from xleq.recalc.sheets.columns import KEPT, Cells, Spot, Unsupported
 from xleq.workbook import Formula, FormulaKind
 
 if TYPE_CHECKING:
-    from xleq.recalc.evaluate import Cell, Engine
+    from xleq.recalc.sheets.evaluate import Cell, Engine
 
 
 class Spreader:
@@ -87,7 +87,7 @@ class Spreader:
         self._put(cell, area, padded(whole, height, width), bits)
 
     def _put(self, cell: Cell, area: Area, values: list[Value], bits: int) -> None:
-        from xleq.recalc.evaluate import single_value
+        from xleq.recalc.sheets.evaluate import single_value
 
         owners = self._owners[cell[0]]
         for spot, value in zip(_spots(area), values, strict=True):
@@ -202,7 +202,7 @@ class DataTables:
     def _evaluated(self, inputs: Mapping[Cell, Value], source: Cell) -> Value:
         from dataclasses import replace
 
-        from xleq.recalc.evaluate import Engine as Another
+        from xleq.recalc.sheets.evaluate import Engine as Another
 
         # needed before the inputs are changed, so that what is held against them is known
         self._read(source)

@@ -6,11 +6,11 @@ from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from xleq.cells import BLANK, Value
-from xleq.recalc.columns import CHANGED, Blocked
 from xleq.recalc.precedents import areas_of
+from xleq.recalc.sheets.columns import CHANGED, Blocked
 
 if TYPE_CHECKING:
-    from xleq.recalc.evaluate import Cell, Engine
+    from xleq.recalc.sheets.evaluate import Cell, Engine
 
 
 def iterate(engine: Engine, cells: list[Cell]) -> None:

@@ -11,8 +11,8 @@ from xleq.recalc.context import Context
 from xleq.recalc.operands import Area, Array, Operand, Ref
 
 if TYPE_CHECKING:
-    from xleq.recalc import tree
-    from xleq.recalc.columns import Cells
+    from xleq.recalc.sheets.columns import Cells
+    from xleq.recalc.syntax import tree
 
 #: A compiled expression.
 Run: TypeAlias = Callable[[Context], Operand]

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import Final
 
 from xleq.errors import FormulaError, ParseError
-from xleq.recalc.tree import Structured
+from xleq.recalc.syntax.tree import Structured
 
 _ITEMS: Final = ("#all", "#data", "#headers", "#totals", "#this row")
 

@@ -7,14 +7,14 @@ from typing import TYPE_CHECKING, Final
 
 from xleq.cells import MAX_COLUMN, MAX_ROW, CellError
 from xleq.errors import FormulaError
-from xleq.recalc import tree
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.operands import Area, Fail, Ref
-from xleq.recalc.parse import parse, read_place
+from xleq.recalc.sheets.columns import Unsupported
+from xleq.recalc.syntax import tree
+from xleq.recalc.syntax.parse import parse, read_place
 
 if TYPE_CHECKING:
-    from xleq.recalc.compile import Compiler
+    from xleq.recalc.program.compile import Compiler
 
 _R1C1 = re.compile(
     r"R(\[-?[0-9]+\]|[0-9]+)?(C(\[-?[0-9]+\]|[0-9]+)?)?|C(\[-?[0-9]+\]|[0-9]+)?", re.IGNORECASE

@@ -11,16 +11,17 @@ from typing import Any, NamedTuple
 
 from xleq.cells import BLANK, CALC, REF, Blank, CellError, Value, address_text, quote_sheet
 from xleq.errors import FormulaError, LimitError
-from xleq.recalc import tree
-from xleq.recalc.arrays import DataTables, Spreader
-from xleq.recalc.columns import CHANGED, KEPT, MARKED, VOLATILE, Blocked, Spot, Unsupported
-from xleq.recalc.compile import Compiler
 from xleq.recalc.context import Context
-from xleq.recalc.indirect import reference_named
-from xleq.recalc.names import Names
 from xleq.recalc.operands import Area, Array, Operand, Ref
-from xleq.recalc.parse import parse, relative_key, row_template
-from xleq.recalc.references import Run
+from xleq.recalc.program.compile import Compiler
+from xleq.recalc.program.references import Run
+from xleq.recalc.sheets.arrays import DataTables, Spreader
+from xleq.recalc.sheets.columns import CHANGED, KEPT, MARKED, VOLATILE, Blocked, Spot, Unsupported
+from xleq.recalc.sheets.indirect import reference_named
+from xleq.recalc.sheets.names import Names
+from xleq.recalc.syntax import tree
+from xleq.recalc.syntax.fills import relative_key, row_template
+from xleq.recalc.syntax.parse import parse
 from xleq.workbook import Book, Formula, FormulaKind
 
 Cell = tuple[int, int, int]
@@ -330,7 +331,7 @@ class Engine:
     def circle(self, cells: list[Cell]) -> None:
         """Settle formulas that need each other: iterate where the file says so, else keep them."""
         if self.book.calculation.iterate:
-            from xleq.recalc.circles import iterate
+            from xleq.recalc.sheets.circles import iterate
 
             iterate(self, cells)
             return

@@ -6,14 +6,14 @@ from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from xleq.cells import BLANK, Value
-from xleq.recalc.arrays import padded
-from xleq.recalc.columns import VOLATILE, Blocked, Unsupported
-from xleq.recalc.evaluate import Disagreement, Engine, agree, single_value
 from xleq.recalc.operands import Area, Array
+from xleq.recalc.sheets.arrays import padded
+from xleq.recalc.sheets.columns import VOLATILE, Blocked, Unsupported
+from xleq.recalc.sheets.evaluate import Disagreement, Engine, agree, single_value
 from xleq.workbook import Formula, FormulaKind
 
 if TYPE_CHECKING:
-    from xleq.recalc.evaluate import Cell
+    from xleq.recalc.sheets.evaluate import Cell
 
 
 def recheck(engine: Engine) -> list[Disagreement]:

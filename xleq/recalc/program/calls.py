@@ -9,12 +9,12 @@ from typing import TYPE_CHECKING, Any, Final
 
 from xleq.cells import BLANK, DIV0, MISSING, NA, NUM, VALUE, Blank, CellError, Missing, Value
 from xleq.recalc.coerce import NOT_A_VALUE, to_logical, to_number, to_text
-from xleq.recalc.columns import VOLATILE
 from xleq.recalc.context import Context
 from xleq.recalc.natives.table import SCALAR_KINDS, Native, Parameter
 from xleq.recalc.operands import Array, Computed, Fail, Operand, Ref
-from xleq.recalc.operators import stretched
-from xleq.recalc.references import Run, block, constant, contents
+from xleq.recalc.program.operators import stretched
+from xleq.recalc.program.references import Run, block, constant, contents
+from xleq.recalc.sheets.columns import VOLATILE
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray

@@ -6,8 +6,8 @@ from xleq.cells import CellError
 from xleq.recalc.coerce import near
 from xleq.recalc.context import Context
 from xleq.recalc.operands import Operand
-from xleq.recalc.operators import apply, snapped
-from xleq.recalc.references import Run
+from xleq.recalc.program.operators import apply, snapped
+from xleq.recalc.program.references import Run
 
 # the operands are values or arrays here: `Compiler.scalar` has read every reference
 # mypy: disable-error-code="arg-type"

@@ -12,16 +12,13 @@ from collections.abc import Callable, Mapping
 from typing import TYPE_CHECKING, Any, Final
 
 from xleq.cells import BLANK, MISSING, NAME, CellError, Missing
-from xleq.recalc import tree
-from xleq.recalc.calls import native_call, own_call, prepared
-from xleq.recalc.columns import Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.natives import natives
 from xleq.recalc.operands import Array, Operand, Ref
-from xleq.recalc.operators import SCALAR, apply, hundredth, negate
-from xleq.recalc.parse import bare_name
-from xleq.recalc.quick import arithmetic, comparison, difference, total
-from xleq.recalc.references import (
+from xleq.recalc.program.calls import native_call, own_call, prepared
+from xleq.recalc.program.operators import SCALAR, apply, hundredth, negate
+from xleq.recalc.program.quick import arithmetic, comparison, difference, total
+from xleq.recalc.program.references import (
     Run,
     area_of,
     block,
@@ -35,10 +32,13 @@ from xleq.recalc.references import (
     spanned,
     united,
 )
+from xleq.recalc.sheets.columns import Unsupported
+from xleq.recalc.syntax import tree
+from xleq.recalc.syntax.parse import bare_name
 
 if TYPE_CHECKING:
-    from xleq.recalc.columns import Cells
-    from xleq.recalc.names import Names
+    from xleq.recalc.sheets.columns import Cells
+    from xleq.recalc.sheets.names import Names
 
 #: Names of LET and LAMBDA in scope, in lower case, and their places among the context's `locals`.
 Scope = Mapping[str, int]
@@ -125,7 +125,7 @@ class Compiler:
             case tree.Call():
                 return self.call(node, array, scope)
             case tree.Apply():
-                from xleq.recalc.scopes import apply_value
+                from xleq.recalc.program.scopes import apply_value
 
                 return apply_value(
                     self, self.operand(node.function, array, scope), node.arguments, array, scope
@@ -149,7 +149,7 @@ class Compiler:
             place = scope[bare]
             return lambda at: at.locals[place]  # type: ignore[return-value]
         if node.name.lower().startswith("_xleta."):
-            from xleq.recalc.scopes import function_value
+            from xleq.recalc.program.scopes import function_value
 
             return function_value(self, bare.upper())
         return self.names.run(node, self.sheet, self)
@@ -201,7 +201,7 @@ class Compiler:
 
     def call(self, node: tree.Call, array: bool, scope: Scope) -> Run:
         """A function by name."""
-        from xleq.recalc import scopes
+        from xleq.recalc.program import scopes
 
         bare = node.name.lower()
         if bare in scope:

@@ -6,17 +6,17 @@ from collections.abc import Callable, Sequence
 from typing import TYPE_CHECKING, Any, Final
 
 from xleq.cells import MISSING, CellError, Missing, Value
-from xleq.recalc import tree
-from xleq.recalc.calls import gathered
 from xleq.recalc.coerce import to_logical, to_number
 from xleq.recalc.context import Context
-from xleq.recalc.lambdas import Lambda, call_lambda
 from xleq.recalc.operands import Array, Fail, Operand
-from xleq.recalc.parse import bare_name
-from xleq.recalc.references import Run, constant, contents
+from xleq.recalc.program.calls import gathered
+from xleq.recalc.program.lambdas import Lambda, call_lambda
+from xleq.recalc.program.references import Run, constant, contents
+from xleq.recalc.syntax import tree
+from xleq.recalc.syntax.parse import bare_name
 
 if TYPE_CHECKING:
-    from xleq.recalc.compile import Compiler, Scope
+    from xleq.recalc.program.compile import Compiler, Scope
 
 Special = Callable[["Compiler", tree.Call, bool, "Scope"], Run]
 
@@ -194,7 +194,7 @@ def _helper(least: int, most: int, work: Callable[..., Operand]) -> Special:
 
 
 def _map(at: Context, function: Operand, *arrays: Array) -> Operand:
-    from xleq.recalc.operators import stretched
+    from xleq.recalc.program.operators import stretched
 
     height, width = max(a.height for a in arrays), max(a.width for a in arrays)
     lists = [stretched(a, height, width) for a in arrays]

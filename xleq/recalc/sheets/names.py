@@ -7,16 +7,16 @@ from typing import TYPE_CHECKING, Final
 
 from xleq.cells import REF, CellError, Value
 from xleq.errors import FormulaError
-from xleq.recalc import tree
-from xleq.recalc.columns import Blocked, Cells, Unsupported
 from xleq.recalc.context import Context
 from xleq.recalc.operands import Area, Operand, Ref
-from xleq.recalc.parse import parse
-from xleq.recalc.references import Run, constant
+from xleq.recalc.program.references import Run, constant
+from xleq.recalc.sheets.columns import Blocked, Cells, Unsupported
+from xleq.recalc.syntax import tree
+from xleq.recalc.syntax.parse import parse
 from xleq.workbook import Book, DefinedName, SheetKind, Table
 
 if TYPE_CHECKING:
-    from xleq.recalc.compile import Compiler
+    from xleq.recalc.program.compile import Compiler
 
 _NO_ROW: Final = CellError("#VALUE!", "the formula's row is not one of the table's")
 

@@ -1,0 +1,1 @@
+"""Syntax trees compiled to closures: operators, references, calls, LET and LAMBDA."""

@@ -1,0 +1,1 @@
+"""The cells of a workbook while they are evaluated."""

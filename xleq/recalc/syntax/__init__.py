@@ -1,0 +1,1 @@
+"""Formula text and its syntax tree."""
