@@ -24,6 +24,7 @@ _USUAL: Final = re.compile(
     rb"(?:<\1v(?: [\w:]+=\"[^\"<]*\")?(?:/>|>[^<]*</\1v>))?</\1c>)"
 )
 _ATTRIBUTE: Final = re.compile(rb"\s+([\w.:-]+)\s*=\s*(\"[^\"]*\"|'[^']*')")
+#: What tells of the old value: its kind, and rich data that stand for it.
 _TYPE: Final = re.compile(rb" (?:t|vm)=\"[^\"]*\"")
 _REF: Final = re.compile(rb"(\sref\s*=\s*)(?:\"[^\"]*\"|'[^']*')")
 _SPANS: Final = re.compile(rb"\sspans\s*=\s*(?:\"[^\"]*\"|'[^']*')")

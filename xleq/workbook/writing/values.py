@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from typing import Final
 
-from xleq.cells import BLANK, CellError, Value
+from xleq.cells import BLANK, VALUE, CellError, Value
 from xleq.errors import InputError
 from xleq.workbook.markup import escaped
 
@@ -41,12 +41,24 @@ def number_text(number: float) -> str:
 def same_value(stored: Value, fresh: Value) -> bool:
     """Whether a fresh value is stored already: same kind, and equal to the last bit.
 
+    A newer error is stored as #VALUE!, so that a plain #VALUE! holds it already.
+
     Examples
     --------
-    >>> same_value(1.0, True), same_value(0.3, 0.1 + 0.2), same_value("a", "a")
-    (False, False, True)
+    >>> from xleq.cells import SPILL
+    >>> same_value(1.0, True), same_value(0.3, 0.1 + 0.2), same_value("a", "a"), same_value(VALUE, SPILL)
+    (False, False, True, True)
     """
-    return type(stored) is type(fresh) and stored == fresh
+    if type(stored) is not type(fresh):
+        return False
+    return stored == fresh or (
+        isinstance(fresh, CellError) and stored == VALUE and _code_of(fresh) == "#VALUE!"
+    )
+
+
+def _code_of(error: CellError) -> str:
+    """The code under which the file keeps an error."""
+    return error.code if error.code in _STORED_ERRORS else "#VALUE!"
 
 
 def markup_of(value: Value, prefix: bytes) -> tuple[bytes, bytes]:
@@ -79,8 +91,7 @@ def markup_of(value: Value, prefix: bytes) -> tuple[bytes, bytes]:
         space, text = _text_markup(value)
         return b' t="str"', b"<%bv%b>%b</%bv>" % (prefix, space, text, prefix)
     if isinstance(value, CellError):
-        code = value.code if value.code in _STORED_ERRORS else "#VALUE!"
-        return b' t="e"', b"<%bv>%b</%bv>" % (prefix, code.encode(), prefix)
+        return b' t="e"', b"<%bv>%b</%bv>" % (prefix, _code_of(value).encode(), prefix)
     if value is BLANK:
         return b"", b""
     raise InputError(f"{value!r} is no value of a cell")
