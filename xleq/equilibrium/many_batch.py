@@ -226,7 +226,11 @@ def _settle(work: Work, b: Basis, members: Places, here: Flags, ln_n: Floats, pr
         work.n[members] = n
         return members[:0]
     holds = e.rows[b.rows][:, b.present].astype(np.float64) / e.denominator
-    n[:, b.present] = totals_of(work, b, b.present, members) + n[:, b.made] @ holds
+    fed = totals_of(work, b, b.present, members)
+    n[:, b.present] = fed + n[:, b.made] @ holds
+    # What is left of a difference within its rounding is for the solver of single instances.
+    clear = np.abs(n[:, b.present]) > 1e-14 * (np.abs(fed) + n[:, b.made] @ np.abs(holds))
+    sure = clear.all(axis=1)
     drive = np.zeros(n.shape)
     ln_a = ln_n[np.ix_(members, b.basis)] + work.shift[members, None]
     if work.per_total:
@@ -239,9 +243,9 @@ def _settle(work: Work, b: Basis, members: Places, here: Flags, ln_n: Floats, pr
         here, np.maximum(-n[:, work.pure], 0.0) * 1e6, np.maximum(drive[:, work.pure] - NO_DRIVE, 0.0)
     )
     right = wrong.max(axis=1) == 0.0
-    work.n[members[right]] = n[right]
-    again: Places = members[~right]
-    worst = wrong[~right].argmax(axis=1)
+    work.n[members[right & sure]] = n[right & sure]
+    again: Places = members[~right & sure]
+    worst = wrong[~right & sure].argmax(axis=1)
     present[again, worst] = ~present[again, worst]
     return again
 

@@ -133,42 +133,53 @@ def structure(nu: Stoichiometry) -> Structure:
 def eliminate(matrix: NDArray[Any], order: Sequence[int]) -> Elimination:
     """Gauss-Jordan elimination in whole numbers, columns taken in the order given.
 
-    Every entry stays a minor of the matrix, so no fractions arise (E. H. Bareiss, Math. Comp. 22 (1968) 565).
-    The species early in the order become pivots if they can; so the order decides the basis.
+    No fractions arise, and each row is kept free of common factors, so that its numbers stay small. The species
+    early in the order become pivots if they can; so the order decides the basis.
 
     Parameters
     ----------
     matrix : array [n_reactions, n_species] of whole numbers
     order : sequence of int
         Columns to try as pivots, first to last.
+
+    Examples
+    --------
+    >>> e = eliminate(np.array([[-1, 2, 0], [-1, 0, 3]]), [1, 0, 2])
+    >>> e.pivots, e.rows.tolist(), e.denominator
+    ((1, 0), [[0, 2, -3], [2, 0, -6]], 2)
     """
     n_rows, n_cols = matrix.shape
     m = np.concatenate([matrix, np.eye(n_rows, dtype=matrix.dtype)], axis=1)
     pivots: list[int] = []
-    previous = 1
     for c in order:
         t = len(pivots)
         if t == n_rows:
             break
-        candidates = np.flatnonzero(m[t:, c])
-        if not len(candidates):
+        hit = np.flatnonzero(m[:, c])
+        at = int(np.searchsorted(hit, t))
+        if at == len(hit):
             continue
-        source = t + int(candidates[0])
+        source = int(hit[at])
         if source != t:
             m[[t, source]] = m[[source, t]]
-        pivot = m[t, c]
+            hit = np.flatnonzero(m[:, c])
+        others = hit[hit != t]
+        pivots.append(int(c))
+        if not len(others):
+            continue
         if m.dtype != object and 2.0 * float(np.abs(m).max()) ** 2 > _INT64_SAFE:
             m = m.astype(object)
-            pivot = m[t, c]
-        row = m[t].copy()
-        m = (pivot * m - np.multiply.outer(m[:, c], row)) // previous
-        m[t] = row
-        pivots.append(int(c))
-        previous = pivot
+        changed = m[t, c] * m[others] - np.multiply.outer(m[others, c], m[t])
+        m[others] = changed // np.gcd.reduce(changed, axis=1)[:, None]
     rank = len(pivots)
-    denominator = int(previous)
-    sign = -1 if denominator < 0 else 1
-    return Elimination(tuple(pivots), sign * m[:rank, :n_cols], sign * m[:rank, n_cols:], sign * denominator)
+    own = [int(m[r, c]) for r, c in enumerate(pivots)]
+    denominator = math.lcm(1, *own)
+    factors = [denominator // x for x in own]
+    top = float(np.abs(m[:rank]).max()) if rank else 0.0
+    if m.dtype != object and denominator * top > _INT64_SAFE:
+        m = m.astype(object)
+    m = m[:rank] * np.array(factors, dtype=m.dtype)[:, None]
+    return Elimination(tuple(pivots), m[:, :n_cols], m[:, n_cols:], denominator)
 
 
 def check_dependent(s: Structure, ln_k: Sequence[float]) -> tuple[tuple[float, ...], tuple[str, ...]]:

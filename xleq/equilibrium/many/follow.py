@@ -22,6 +22,8 @@ NO_DRIVE = 1e-9
 _ABSENT = -3.0
 _MAX_STEPS = 1500
 _MIN_ADVANCE = 1e-5
+# What rounding leaves of a difference, in parts of its terms.
+_ROUNDING = 1e-15
 
 
 def first_guess(system: System) -> Floats:
@@ -54,8 +56,7 @@ def contradiction(n: Floats, drive: Floats, present: frozenset[int], pure: NDArr
     int or None
         None if the set is right.
     """
-    scale = float(np.abs(n).max(initial=0.0))
-    negative = [p for p in present if n[p] < -1e-15 * scale]
+    negative = [p for p in present if n[p] < 0.0]
     if negative:
         return min(negative, key=lambda p: float(n[p]))
     eager = [p for p in pure.tolist() if p not in present and drive[p] > NO_DRIVE]
@@ -149,7 +150,9 @@ def _phase_amounts(system: System, path: Path) -> tuple[Floats, Floats]:
     made = np.exp((f.offset + f.linear @ path.x)[len(f.basis) :])
     totals, denominator = exact_totals(e, system.present.tolist(), system.n0)
     rows = e.rows[list(f.rows_of_made)][:, system.present].astype(np.float64) / e.denominator
-    n[system.present] = np.array([x / denominator for x in totals]) + rows.T @ made
+    fed = np.array([x / denominator for x in totals])
+    left, gross = fed + rows.T @ made, np.abs(fed) + np.abs(rows).T @ made
+    n[system.present] = np.where(np.abs(left) > _ROUNDING * gross, left, 0.0)
     gone = set(system.gone.tolist())
     at = [r for r, k in enumerate(e.pivots) if k in gone]
     total = path.x[-1] if system.per_total else 0.0

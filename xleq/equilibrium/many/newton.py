@@ -26,6 +26,7 @@ MAX_STEPS = 80
 #: Steps of Newton's method spent on following one equilibrium.
 MAX_CONTINUATION = 2000
 _CONVERGED = 1e-12
+_BALANCED = 1e-6
 
 
 @dataclass(frozen=True, slots=True)
@@ -222,7 +223,8 @@ def newton(system: System, ln_n: Floats, max_steps: int = MAX_STEPS) -> Path | N
             change *= LONGEST_STEP / longest
         x = x + change
         if longest < _CONVERGED or (longest < 1e-9 and longest >= best):
-            return Path(f, x, True, step + 1)
+            # A residual that no step makes smaller is no solution.
+            return Path(f, x, worst < _BALANCED, step + 1)
         best = longest if longest < 1e-9 else np.inf
     return Path(f, x, False, max_steps)
 

@@ -16,6 +16,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from xleq.equilibrium.many.follow import NO_DRIVE, contradiction, first_guess, follow, with_phases
+from xleq.equilibrium.many.linear import by_linear_program
 from xleq.equilibrium.many.newton import MAX_STEPS, Frame, Path, System, continuation, frame, newton
 from xleq.equilibrium.many.polish import Polished, polish
 from xleq.equilibrium.structure import exact_totals
@@ -25,6 +26,8 @@ Verdict = Literal["found", "vanished", "impossible", "indeterminate", "failed"]
 
 #: Sets of phases that are tried before giving up.
 MAX_SETS = 600
+#: Newton steps (of a system of ordinary size) that trying them may take in all: a second or two.
+MAX_SEARCH = 15_000
 
 
 @dataclass(frozen=True, slots=True)
@@ -143,8 +146,8 @@ def choose(base: System, pure: NDArray[np.intp], near: Outcome | None = None) ->
     """The set of pure phases that contradicts nothing, and the equilibrium with it.
 
     Phases are dropped and added one by one, worst first, from those that are fed. If that comes to no end,
-    the set is followed from an easy equilibrium to the one wanted; if that fails too, the sets are tried in
-    turn, nearest first, up to `MAX_SETS`.
+    the set is followed from an easy equilibrium to the one wanted, then guessed by a linear program; if all
+    that fails, the sets are tried in turn, nearest first, up to `MAX_SETS`.
 
     Parameters
     ----------
@@ -163,10 +166,13 @@ def choose(base: System, pure: NDArray[np.intp], near: Outcome | None = None) ->
         done = _exchange(base, pure, near.present, near.amounts.ln_n, tried)
     if done is None:
         done = _exchange(base, pure, fed, ln_n, tried)
-    if done is None and len(pure):
+    if done is None and len(pure) and len(base.fluid):
         led, at = follow(base, pure, ln_n)
         if led is not None:
             done = _exchange(base, pure, led, at, tried)
+    if done is None and len(pure):
+        guess, at = by_linear_program(base, pure)
+        done = None if guess is None else _exchange(base, pure, guess, at, tried)
     if done is None:
         done = _search(base, pure, fed, tried, ln_n)
     steps = sum(o.steps for o in tried.values())
@@ -210,12 +216,17 @@ def _search(
     ln_n: Floats,
 ) -> Outcome | None:
     """Try set after set, quickly first and thoroughly then."""
+    # A step of a large system costs more.
+    work, size = 0.0, max(1.0, base.whole.size / 200.0)
     for hard in (False, True):
         for present in islice(_sets(pure, near), MAX_SETS):
+            if work > MAX_SEARCH:
+                return None
             known = tried.get(present)
             if known is not None and (known.verdict != "failed" or not hard):
                 continue
             o = solve_set(base, pure, present, ln_n, hard)
+            work += (o.steps + 1.0) * size
             tried[present] = o
             if o.verdict == "indeterminate":
                 return o

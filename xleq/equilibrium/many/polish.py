@@ -20,8 +20,11 @@ Floats = NDArray[np.float64]
 
 _DIGITS = Context(prec=50, Emin=-999999999, Emax=999999999)
 _MAX_CORRECTIONS = 12
-#: Error of ln n that is left in the end. [-]
+#: Error of ln n that is left in the end; less where amounts of pure phases come from differences. [-]
 _SMALL_ENOUGH = 1e-18
+_SMALL_FOR_PHASES = 1e-28
+#: What is left of a difference below this part of its terms is nothing.
+_NOTHING = Decimal("1e-25")
 #: A fluid species above this many times the feed is no amount but a flight to infinity.
 _TOO_MUCH = 1e20
 
@@ -59,6 +62,7 @@ def polish(system: System, path: Path) -> Polished | None:
             return None
         # What one correction leaves of an error: the inverse is good to some digits only.
         leaves = 1e-13 * float(np.abs(inverse).sum()) * float(np.abs(slope).sum())
+        enough = _SMALL_FOR_PHASES if len(system.present) else _SMALL_ENOUGH
         last = np.inf
         for _ in range(_MAX_CORRECTIONS):
             value = model.residual(x)
@@ -70,7 +74,7 @@ def polish(system: System, path: Path) -> Polished | None:
                 return None
             x = [v - Decimal(float(c)) for v, c in zip(x, change, strict=True)]
             last = size
-            if size * (leaves + size) < _SMALL_ENOUGH:
+            if size * (leaves + size) < enough:
                 break
         else:
             return None
@@ -161,10 +165,12 @@ class _Exact:
         totals, denominator = exact_totals(e, system.present.tolist(), system.n0)
         for p, total in zip(system.present, totals, strict=True):
             left = Decimal(total) / Decimal(denominator)
+            gross = Decimal(0)
             for r, amount in zip(f.rows_of_made, amounts[len(f.basis) :], strict=True):
                 if v := int(e.rows[r, p]):
                     left += v * amount / self.d
-            n[p] = float(left)
+                    gross += abs(v) * amount / self.d
+            n[p] = float(left) if abs(left) > _NOTHING * gross else 0.0
         ln_total = x[-1] if system.per_total else Decimal(0)
         gone = set(system.gone.tolist())
         for r, p in enumerate(e.pivots):
