@@ -100,5 +100,5 @@ def test_an_element_that_is_not_fed_leaves_its_species_out():
 def test_too_many_species_are_refused_at_once():
     with pytest.raises(OutOfRangeError, match="10000 species are too many"):
         check_size(10_000, 1)
-    with pytest.raises(OutOfRangeError, match="301 reactions"):
-        check_size(10, 301)
+    with pytest.raises(OutOfRangeError, match="251 reactions"):
+        check_size(10, 251)

@@ -19,8 +19,8 @@ from numpy.typing import NDArray
 from xleq.errors import AmbiguousError, OutOfRangeError
 
 #: Largest system that is taken on; the work grows with the third power. [-]
-MAX_SPECIES = 400
-MAX_REACTIONS = 300
+MAX_SPECIES = 250
+MAX_REACTIONS = 250
 #: How far ln K of a dependent reaction may be from what the others imply, relative to their size. [-]
 LN_K_AGREEMENT = 1e-6
 _INT64_SAFE = 2.0**61
@@ -83,7 +83,7 @@ def check_size(n_species: int, n_reactions: int) -> None:
     --------
     >>> check_size(10_000, 3)
     Traceback (most recent call last):
-    xleq.errors.OutOfRangeError: 10000 species are too many; at most 400 are solved at once
+    xleq.errors.OutOfRangeError: 10000 species are too many; at most 250 are solved at once
     """
     if n_species > MAX_SPECIES:
         raise OutOfRangeError(f"{n_species} species are too many; at most {MAX_SPECIES} are solved at once")
@@ -133,7 +133,7 @@ def structure(nu: Stoichiometry) -> Structure:
 def eliminate(matrix: NDArray[Any], order: Sequence[int]) -> Elimination:
     """Gauss-Jordan elimination in whole numbers, columns taken in the order given.
 
-    No fractions arise, and each row is kept free of common factors, so that its numbers stay small. The species
+    No fractions arise, and each row is kept free of common factors, so that its numbers stay small. Species
     early in the order become pivots if they can; so the order decides the basis.
 
     Parameters
