@@ -12,6 +12,8 @@ from xleq.recalc.days import MONTHS, SECONDS, day_number, month_length
 
 #: Longest plain notation; what would be longer is written with an exponent.
 _LONGEST: Final = 20
+#: Longest text that is read as a number, a date or a time.
+_LONGEST_NUMBER: Final = 255
 _SMALLEST_NORMAL: Final = 2.2250738585072014e-308
 
 
@@ -50,12 +52,12 @@ def number_text(x: float) -> str:
 
 _PLAIN = re.compile(r"[+-]?[0-9]{1,15}(?:\.[0-9]{0,14})?")
 _NUMBER = re.compile(
-    r"(?P<open>\()?\s*(?P<sign>[+-])?\s*(?P<money>[$€])?\s*(?P<sign2>[+-])?\s*(?P<before>%)?\s*"
+    r"(?P<open>\()? *+(?P<sign>[+-])? *+(?P<money>[$€])? *+(?P<sign2>[+-])? *+(?P<before>%)? *+"
     r"(?P<whole>[0-9]+(?:,[0-9]{3,})*|(?=\.[0-9]))(?P<point>\.[0-9]*)?(?:E(?P<power>[+-]?[0-9]+))?"
-    r"\s*(?P<after>%)?\s*(?P<euro>€)?\s*(?P<close>\))?\s*(?P<after2>%)?",
+    r" *+(?P<after>%)? *+(?P<euro>€)? *+(?P<close>\))? *+(?P<after2>%)?",
     re.IGNORECASE,
 )
-_FRACTION = re.compile(r"(?P<sign>[+-])?\s*(?P<whole>[0-9]+) +(?P<top>[0-9]{1,5})/(?P<bottom>[0-9]{1,5})")
+_FRACTION = re.compile(r"(?P<sign>[+-])? *+(?P<whole>[0-9]+) ++(?P<top>[0-9]{1,5})/(?P<bottom>[0-9]{1,5})")
 
 
 def parse_number(text: str, *, year: int | None = None, date_1904: bool = False) -> float | None:
@@ -80,6 +82,8 @@ def parse_number(text: str, *, year: int | None = None, date_1904: bool = False)
     (43832.0, 43832.0, 0.9375)
     """
     text = text.strip(" ")
+    if len(text) > _LONGEST_NUMBER:
+        return None
     if _PLAIN.fullmatch(text):
         digits = text.lstrip("+-").lstrip("0")
         if len(digits) <= 16:
@@ -147,7 +151,7 @@ def parse_time(text: str) -> float | None:
     >>> parse_time("10:30"), parse_time("6:35 pm"), parse_time("36:00"), parse_time("13:00 PM")
     (0.4375, 0.7743055555555556, 1.5, None)
     """
-    match = _TIME.fullmatch(text)
+    match = _TIME.fullmatch(text) if len(text) <= _LONGEST_NUMBER else None
     if match is None:
         return None
     hour, minute = int(match["h"]), int(match["m"] or 0)
@@ -200,6 +204,8 @@ def parse_date(text: str, *, year: int | None = None, date_1904: bool = False) -
     (40777.0, 40685.0, 40729.0)
     """
     text = text.strip(" ")
+    if len(text) > _LONGEST_NUMBER:
+        return None
     day = _day(text, year, date_1904)
     if day is not None:
         return float(day)
