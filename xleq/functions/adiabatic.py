@@ -17,8 +17,10 @@ _STEP: Final = 1.3
 #: A jump of the enthalpy is told from a slope by this relative step of T and this heat capacity [kJ/(mol K)].
 _NEAR: Final = 1e-7
 _STEEPEST: Final = 1000.0
-#: What is added to G/(R T) of a pure phase that is to stay away; whether it does is looked at.
+#: What is added to G/(R T) of a species that is to stay away; whether it does is looked at.
 _NEVER: Final = 300.0
+#: A species of less than this part of all moles does not count in the enthalpy.
+_TRACE: Final = 1e-7
 
 
 class EnthalpyBalance:
@@ -26,7 +28,8 @@ class EnthalpyBalance:
 
     At constant pressure the enthalpy at equilibrium rises with temperature (H. B. Callen, Thermodynamics,
     2nd ed., 1985, ch. 8: stability), so it meets that of the feed once, on a slope or in a jump. Where the
-    data of a pure phase end, the phase is left out beyond, provided that it is absent at that end.
+    data of a species end, a fuel or a liquid of the feed, it is left out beyond, provided that no more than a
+    trace of it is there at that end.
 
     Parameters
     ----------
@@ -38,7 +41,7 @@ class EnthalpyBalance:
     p : float
         Pressure. [bar]
     extrapolate : bool
-        Whether data may be used outside their range; then no phase is left out.
+        Whether data may be used outside their range; then no species is left out.
     """
 
     def __init__(
@@ -51,27 +54,12 @@ class EnthalpyBalance:
         extrapolate: bool,
     ) -> None:
         self.found, self.beyond, self.known, self.p, self.extrapolate = found, beyond, known, p, extrapolate
-        pairs = list(zip(known, found.read.phases, strict=True))
-        self.pure = [] if extrapolate else [i for i, (_, phase) in enumerate(pairs) if phase == "pure"]
-        self.fluid = [data for data, phase in pairs if phase == "fluid"]
-        # Without fluid the solver has its own refusal.
-        ends = [(d.t_min, d.t_max) for d in self.fluid] or [(d.t_min, d.t_max) for d in known]
-        if extrapolate:
-            self.low, self.high = min(a for a, _ in ends), max(b for _, b in ends)
-        else:
-            self.low, self.high = max(a for a, _ in ends), min(b for _, b in ends)
-        if not self.low < self.high:
-            raise MissingDataError(f"the data of these species share no temperature: {self._ends()}")
+        self.low, self.high = min(d.t_min for d in known), max(d.t_max for d in known)
         self.before = 0.0
         self.seen: dict[float, float] = {}
 
-    def _ends(self) -> str:
-        first = max(self.fluid or self.known, key=lambda d: d.t_min)
-        last = min(self.fluid or self.known, key=lambda d: d.t_max)
-        return f"those of {first.key} begin at {first.t_min:g} K, those of {last.key} end at {last.t_max:g} K"
-
     def solution(self, t: float) -> Solution:
-        """The equilibrium at a temperature, without the pure phases that have no data there.
+        """The equilibrium at a temperature, without the species that have no data there.
 
         Raises
         ------
@@ -81,8 +69,8 @@ class EnthalpyBalance:
             If there is no certified equilibrium.
         """
         state = State("P", t, p=self.p)
-        away = [i for i in self.pure if not self.known[i].t_min <= t <= self.known[i].t_max]
-        if not away:
+        away = [i for i, d in enumerate(self.known) if not d.t_min <= t <= d.t_max]
+        if not away or self.extrapolate:
             return self.found.solve(state)
         read = self.found.read
         ln_k = tuple(
@@ -92,13 +80,19 @@ class EnthalpyBalance:
         problem_here = replace(self.found, constants=Constants(lambda _: ln_k)).problem(state)
         solution = solve(problem_here).require()
         for i in away:
-            if solution.n[i] > 0.0:
+            if self._is_there(solution, i):
                 self.known[i].h(t)  # raises, with the range
-        return solution
+        # Its trace would be of the penalty's making.
+        return replace(solution, n=tuple(0.0 if i in away else n for i, n in enumerate(solution.n)))
+
+    @staticmethod
+    def _is_there(solution: Solution, i: int) -> bool:
+        return solution.n[i] > _TRACE * math.fsum(solution.n)
 
     def _enthalpy(self, n: Sequence[float], t: float) -> float:
+        trace = _TRACE * math.fsum(n)
         return math.fsum(
-            amount * data.h(t, extrapolate=self.extrapolate)
+            amount * data.h(t, extrapolate=self.extrapolate or amount <= trace)
             for amount, data in zip(n, self.known, strict=True)
             if amount > 0.0
         )
@@ -120,7 +114,7 @@ class EnthalpyBalance:
         Raises
         ------
         MissingDataError
-            If it lies outside the range of the data, or a phase whose data end before is still there.
+            If it lies outside the range of the data, or a species whose data end before is still there.
         NoAnswerError
             If there is no certified equilibrium on the way.
         """
@@ -145,9 +139,7 @@ class EnthalpyBalance:
             end = self.high if rising else self.low
             if t == end:
                 side = "above" if rising else "below"
-                raise MissingDataError(
-                    f"the adiabatic temperature lies {side} {end:g} K, where the data end: {self._ends()}"
-                )
+                raise MissingDataError(f"the adiabatic temperature lies {side} {end:g} K, where the data end")
             last, t = t, self._next(t, rising)
             gain = self.gain(t)
             if (gain < 0.0) is not rising:
@@ -155,8 +147,8 @@ class EnthalpyBalance:
         return t, t
 
     def _next(self, t: float, rising: bool) -> float:
-        """The next temperature of the search; it stops where the data of a pure phase end."""
-        ends = [end for i in self.pure for end in (self.known[i].t_min, self.known[i].t_max)]
+        """The next temperature of the search; it stops where the data of a species end."""
+        ends = [] if self.extrapolate else [end for d in self.known for end in (d.t_min, d.t_max)]
         if rising:
             return min(t * _STEP, self.high, *(end for end in ends if end > t))
         return max(t / _STEP, self.low, *(end for end in ends if end < t))
@@ -185,10 +177,9 @@ class EnthalpyBalance:
         return span > _STEEPEST * math.fsum(self.found.feed) * t * 2.0 * _NEAR
 
     def _beyond_end(self, t: float) -> list[tuple[SpeciesData, int, float]]:
-        """Pure phases that are without data at a temperature or end there, with their place and the end."""
-        found = []
-        for i in self.pure:
-            data = self.known[i]
+        """Species that are without data at a temperature or end there, with their place and the end."""
+        found: list[tuple[SpeciesData, int, float]] = []
+        for i, data in enumerate(() if self.extrapolate else self.known):
             if t > data.t_max * (1.0 - _NEAR):
                 found.append((data, i, data.t_max))
             elif t < data.t_min * (1.0 + _NEAR):
@@ -197,17 +188,16 @@ class EnthalpyBalance:
 
     def _check_left_out(self, t: float) -> None:
         for data, i, end in self._beyond_end(t):
-            if self.low <= end <= self.high and self.solution(end).n[i] > 0.0:
+            if self._is_there(self.solution(end), i):
                 raise MissingDataError(
                     f"{data.key} is still there at {end:g} K, where its data end; the adiabatic temperature "
                     "lies beyond: give data for it, or allow extrapolation (extrapolate=yes)"
                 )
 
     def notes(self, t: float) -> list[str]:
-        """What a checker should know of the data at a temperature: phases left out for lack of them."""
+        """What a checker should know of the data at a temperature: species left out for lack of them."""
         left_out = self._beyond_end(t)
-        said = [
-            f"{d.key} left out: its data end at {end:g} K, and it is absent there" for d, _, end in left_out
-        ]
+        ended = "left out, given as 0: no more than a trace of it is there where its data end"
+        said = [f"{d.key} {ended}, at {end:g} K" for d, _, end in left_out]
         kept = [d.key for d, _, _ in left_out]
         return said + [n for n in self.found.constants.notes(t) if n.split(" ")[0] not in kept]

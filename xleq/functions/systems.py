@@ -74,6 +74,9 @@ class System:
         InputError
             If it is not there, or the text fits more than one.
         """
+        listed = self.names[: self.n_listed]
+        if listed.count(text) == 1:
+            return listed.index(text)
         return _place(self.species[: self.n_listed], text)
 
     @property
