@@ -55,6 +55,64 @@ def test_the_order_of_the_phases_does_not_matter(seed):
     assert set(there.exhausted) == set(here.exhausted)
 
 
+@pytest.mark.parametrize("seed", SEEDS[::2])
+def test_twice_the_feed_makes_twice_of_every_phase(seed):
+    problem = random_problem(seed, pure=True)
+    state = replace(problem.state, v=2.0 * problem.state.v)
+    double = solve_several(replace(problem, n0=tuple(2.0 * n for n in problem.n0), state=state))
+    once = solve_several(problem)
+    assert double.n == pytest.approx([2.0 * n for n in once.n], rel=1e-10, abs=1e-299)
+    assert double.status == once.status
+
+
+@pytest.mark.parametrize("seed", SEEDS[::2])
+def test_rewriting_the_reactions_keeps_the_phases(seed):
+    problem = random_problem(seed, pure=True)
+    nu, ln_k = [list(row) for row in problem.nu], list(problem.ln_k)
+    for r in range(1, len(nu)):
+        nu[r] = [a - 2 * b for a, b in zip(nu[r], nu[r - 1], strict=True)]
+        ln_k[r] -= 2.0 * ln_k[r - 1]
+    once = solve_several(problem)
+    rewritten = solve_several(replace(problem, nu=tuple(map(tuple, nu)), ln_k=tuple(ln_k)))
+    # Rounding of the combined ln K is an input error of that size.
+    size = 1e-13 * sum(map(abs, ln_k))
+    assert rewritten.n == pytest.approx(once.n, rel=max(1e-10, size), abs=1e-300)
+    assert rewritten.status == once.status
+
+
+@pytest.mark.parametrize("seed", SEEDS[::3])
+def test_an_inert_gas_at_fixed_volume_changes_no_phase(seed):
+    problem = random_problem(seed, pure=True)
+    problem = replace(problem, state=State("V", problem.state.t, v=problem.state.v))
+    more = replace(
+        problem,
+        species=(*problem.species, "inert"),
+        phases=(*problem.phases, "fluid"),
+        nu=tuple((*row, Fraction(0)) for row in problem.nu),
+        n0=(*problem.n0, 55.0),
+    )
+    assert solve_several(more).n == pytest.approx((*solve_several(problem).n, 55.0), rel=1e-12, abs=1e-300)
+
+
+# Seeds of systems whose gas is taken up wholly.
+@pytest.mark.parametrize("seed", [2, 22, 46, 49, 69, 89, 104, 105, 116, 117, 164, 168])
+def test_where_the_gas_vanishes_a_trace_of_inert_leaves_the_phases_as_they_are(seed):
+    problem = random_problem(seed, pure=True)
+    s = solve_several(problem).require()
+    assert s.status == "fluid vanished"
+    fed = math.fsum(problem.n0)
+    traced = replace(
+        problem,
+        species=(*problem.species, "inert"),
+        phases=(*problem.phases, "fluid"),
+        nu=tuple((*row, Fraction(0)) for row in problem.nu),
+        n0=(*problem.n0, 1e-9 * fed),
+    )
+    n = solve_several(traced).require().n
+    assert error_of(traced, n) < 1e-9
+    assert n[:-1] == pytest.approx(s.n, rel=0, abs=1e-6 * fed)
+
+
 # Limestone (common practice, no source for the constants): CaCO3 = CaO + CO2, and quartz that binds the lime.
 LIME = ("CaCO3(s)", "CaO(s)", "CO2", "SiO2(s)", "CaSiO3(s)")
 LIME_NU = rows("-1 1 1 0 0", "0 -1 0 -1 1")
