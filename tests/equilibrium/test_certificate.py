@@ -226,3 +226,22 @@ def test_reactions_that_contradict_each_other_certify_nothing():
     problem = Problem(("A", "B"), ("fluid",) * 2, nu, (1.0, 0.0), (0.0, 1.0), State("X"))
     assert "depends on the others" in certify(problem, (0.5, 0.5)).reason
     assert certify(replace(problem, ln_k=(0.0, 0.0)), (0.5, 0.5)).ok
+
+
+def test_without_the_element_of_the_gas_the_solids_react_alone():
+    # A4(g) could only come from A2(s), which is not fed; B4(s) and B2(s) turn into each other meanwhile.
+    nu = (
+        (Fraction(-2), Fraction(0), Fraction(1), Fraction(0)),
+        (Fraction(0), Fraction(-1, 2), Fraction(0), Fraction(1)),
+    )
+    problem = Problem(
+        ("A2(s)", "B4(s)", "A4", "B2(s)"),
+        ("pure", "pure", "fluid", "pure"),
+        nu,
+        (0.0, 0.0, 0.0, 0.8),
+        (68.0, -117.0),
+        State("P", 930.0, p=1.0),
+    )
+    assert certify(problem, (0.0, 0.4, 0.0, 0.0)).ok
+    assert "B4(s) would form" in certify(problem, problem.n0).reason
+    assert solve(problem).require().n == (0.0, 0.4, 0.0, 0.0)

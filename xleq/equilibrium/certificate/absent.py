@@ -188,4 +188,6 @@ def _vanished(problem: Problem, rows: Rows, absent: Flags, fluid: Flags) -> str:
         share = share[share > 0.0]
         drive = -float(residual[0]) - float(share @ np.log(share / share.sum()))
         return f"a fluid would form: ln K - ln Q = {drive:.3g}" if drive > floor[0] else ""
+    if formable(np.vstack([parts, phases]), fluid[absent]) is None:
+        return ""
     return "whether a fluid would form from several coupled reactions cannot be certified"
