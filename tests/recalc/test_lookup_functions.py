@@ -6,6 +6,8 @@ Expected values agree with LibreOffice 25.2 where it has the function and follow
 import pytest
 
 from tests.recalc.formulas import shown
+from xleq.errors import FormulaError
+from xleq.recalc import evaluate_text
 
 
 @pytest.mark.parametrize(
@@ -193,3 +195,11 @@ def test_choose_evaluates_what_it_takes(formula, value):
 )
 def test_a_link_shows_its_second_argument(formula, value):
     assert shown(formula) == value
+
+
+@pytest.mark.parametrize(
+    "formula", ['=WEBSERVICE("http://x.invalid")', '=GETPIVOTDATA("a",A1)', '=RTD("a",,"b")']
+)
+def test_what_reaches_outside_the_cells_is_refused_with_a_reason(formula):
+    with pytest.raises(FormulaError, match="is not computed: it "):
+        evaluate_text(formula)
