@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 from functools import partial
@@ -18,11 +18,32 @@ if TYPE_CHECKING:
     from xleq.workbook import Book, Written
 
 
-def worksheet_functions() -> dict[str, Callable[[list[Any]], Any]]:
-    """Every worksheet function as the evaluator calls it, by name."""
-    from xleq.functions import TABLE, call
+class WorksheetFunctions(Mapping[str, Callable[[list[Any]], Any]]):
+    """Every worksheet function as the evaluator calls it, by name.
 
-    return {name: partial(call, name) for name in TABLE}
+    The chemistry is imported when the first of them is asked for: many workbooks use none.
+    """
+
+    def __getitem__(self, name: str) -> Callable[[list[Any]], Any]:
+        if name.startswith("XLEQ_"):
+            from xleq.functions import TABLE, call
+
+            if name in TABLE:
+                return partial(call, name)
+        raise KeyError(name)
+
+    def __iter__(self) -> Iterator[str]:
+        from xleq.functions import TABLE
+
+        return iter(TABLE)
+
+    def __len__(self) -> int:
+        return sum(1 for _ in self)
+
+
+def worksheet_functions() -> WorksheetFunctions:
+    """Every worksheet function as the evaluator calls it, by name."""
+    return WorksheetFunctions()
 
 
 def evaluate_formula(formula: str, book: Book | None = None) -> Value | Grid:

@@ -155,10 +155,9 @@ def recalculate(
     trust = book.calculation.full_calc_on_load if trust_fresh is None else trust_fresh
     settings = Settings(now or datetime.now(), seed, seconds, not trust)
     inputs = _inputs(book, overrides or {})
-    names = {name.upper(): function for name, function in functions.items()}
     areas: dict[Cell, Any] = {}
     for _ in range(_ROUNDS):
-        engine = Engine(book, names, settings, inputs, areas)
+        engine = Engine(book, functions, settings, inputs, areas)
         engine.everything()
         if not engine.spread.grown:
             break
@@ -262,8 +261,7 @@ def evaluate_text(
 
     if book is None:
         book = Book(Path(), (Sheet("Sheet1", 0, ""),))
-    names = {name.upper(): function for name, function in (functions or {}).items()}
-    engine = Engine(book, names, Settings(now or datetime.now(), seed, check=False), {}, {})
+    engine = Engine(book, functions or {}, Settings(now or datetime.now(), seed, check=False), {}, {})
     try:
         run = engine.compilers[0].formula(parse(formula), True)
         while True:
