@@ -6,6 +6,7 @@ import math
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from functools import lru_cache
 from typing import Final, TypeAlias
 
 from xleq.cells import BLANK, Grid, Value
@@ -146,11 +147,17 @@ def constants_of(
 
 
 def _from_data(read: System, table: Table, *, extrapolate: bool) -> Constants:
-    data = tuple(reaction_data(r, table) for r in read.reactions)
+    data = data_of(read, table)
     at: Callable[[State], Numbers] = lambda state: tuple(  # noqa: E731
         [d.ln_k(state.t, extrapolate=extrapolate) for d in data]
     )
     return Constants(at, data, max(d.t_min for d in data), min(d.t_max for d in data))
+
+
+@lru_cache(maxsize=4096)
+def data_of(read: System, table: Table) -> tuple[ReactionData, ...]:
+    """Formation data of each reaction of a system."""
+    return tuple(reaction_data(r, table) for r in read.reactions)
 
 
 def is_fit(k: Value | Grid, n_reactions: int) -> bool:
@@ -215,7 +222,7 @@ def slopes_of(read: System, k: Value | Grid, table: Table, t: float) -> Numbers 
         If T lies outside the range of the data.
     """
     if is_data(k):
-        return tuple(reaction_data(r, table).dln_k_dt(t) for r in read.reactions)
+        return tuple(d.dln_k_dt(t) for d in data_of(read, table))
     if is_fit(k, len(read.reactions)):
         fits = fits_of(k, len(read.reactions))
         return tuple(1000.0 * dh_from_fit(fit, t) / (R * t * t) for fit in fits)

@@ -38,17 +38,17 @@ def wanted(system: System, solution: Solution, want: Want) -> Value | list[Value
     """
     word = want.word
     if word in _PER_SPECIES:
-        one = _ONE[word]
+        one, total = _ONE[word], fluid_total(solution)
         open_gases = () if word == "change" else system.open_gases
         if want.species is not None:
             place = system.index(want.species)
-            value = one(solution, place) if place not in open_gases else _NO_AMOUNT
+            value = one(solution, place, total) if place not in open_gases else _NO_AMOUNT
             if isinstance(value, str):
                 raise NoAnswerError(f"{want.species} has no {word}: {value}")
             return value
         listed: list[Value] = []
         for i in range(system.n_listed):
-            value = one(solution, i) if i not in open_gases else _NO_AMOUNT
+            value = one(solution, i, total) if i not in open_gases else _NO_AMOUNT
             listed.append("" if isinstance(value, str) else value)
         return listed
     if want.species is not None:
@@ -56,7 +56,7 @@ def wanted(system: System, solution: Solution, want: Want) -> Value | list[Value
     return _WHOLE[word](system, solution)
 
 
-def _moles(solution: Solution, i: int) -> float | str:
+def _moles(solution: Solution, i: int, total: float) -> float | str:
     return solution.n[i]
 
 
@@ -75,16 +75,15 @@ def fluid_total(solution: Solution) -> float:
     return math.fsum(n for n, phase in zip(solution.n, phases, strict=True) if phase == "fluid")
 
 
-def _fractions(solution: Solution, i: int) -> float | str:
+def _fractions(solution: Solution, i: int, total: float) -> float | str:
     if solution.problem.phases[i] == "pure":
         return "it is a pure phase, not part of the fluid"
-    total = fluid_total(solution)
     if total == 0.0:
         return "no fluid is left"
     return solution.n[i] / total
 
 
-def _pressures(solution: Solution, i: int) -> float | str:
+def _pressures(solution: Solution, i: int, total: float) -> float | str:
     state = solution.problem.state
     if state.kind not in "PV":
         raise InputError("partial pressures are results of gases only")
@@ -92,7 +91,7 @@ def _pressures(solution: Solution, i: int) -> float | str:
         return "it is a pure phase, not part of the gas"
     if state.kind == "V" and solution.problem.model is None:
         return solution.n[i] * R_L_BAR * state.t / state.v
-    fraction = _fractions(solution, i)
+    fraction = _fractions(solution, i, total)
     return fraction if isinstance(fraction, str) else fraction * _pressure(solution)
 
 
@@ -107,7 +106,7 @@ def _pressure(solution: Solution) -> float:
     return model.pressure(np.array(solution.n), state)
 
 
-def _concentrations(solution: Solution, i: int) -> float | str:
+def _concentrations(solution: Solution, i: int, total: float) -> float | str:
     state = solution.problem.state
     if state.kind == "X":
         raise InputError("concentrations need a volume, and this liquid has none; ask for fractions")
@@ -119,26 +118,26 @@ def _concentrations(solution: Solution, i: int) -> float | str:
         raise InputError(
             "concentrations at given pressure are those of an ideal gas; leave the option gas away"
         )
-    fraction = _fractions(solution, i)
+    fraction = _fractions(solution, i, total)
     return fraction if isinstance(fraction, str) else fraction * state.p / (R_L_BAR * state.t)
 
 
-def _change(solution: Solution, i: int) -> float | str:
+def _change(solution: Solution, i: int, total: float) -> float | str:
     # From the extents, as a difference of amounts would lose the digits of a small change.
     nu = solution.problem.nu
     return math.fsum(float(row[i]) * xi for row, xi in zip(nu, solution.xi, strict=True)) + 0.0
 
 
-def _conversion(solution: Solution, i: int) -> float | str:
+def _conversion(solution: Solution, i: int, total: float) -> float | str:
     fed = solution.problem.n0[i]
     if fed == 0.0:
         return "none of it is fed"
-    change = _change(solution, i)
+    change = _change(solution, i, total)
     assert isinstance(change, float)
     return -change / fed + 0.0
 
 
-_ONE: Final[dict[str, Callable[[Solution, int], float | str]]] = {
+_ONE: Final[dict[str, Callable[[Solution, int, float], float | str]]] = {
     "moles": _moles,
     "fractions": _fractions,
     "pressures": _pressures,
@@ -171,7 +170,7 @@ def _residual(system: System, solution: Solution) -> list[Value]:
 def _table(system: System, solution: Solution) -> Grid:
     grid: Grid = [["species", "initial", "change", "equilibrium"]]
     for i in range(system.n_listed):
-        change = _change(solution, i)
+        change = _change(solution, i, 0.0)
         ends: tuple[Value, Value] = (solution.problem.n0[i], solution.n[i])
         if i in system.open_gases:
             ends = ("", "")

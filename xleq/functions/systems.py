@@ -32,9 +32,11 @@ SOLVENT_WATER: Final = 55.35
 RESERVOIR: Final = 1000.0
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class System:
     """Species and reactions of an equilibrium, before amounts and conditions are known.
+
+    Two systems are the same only if they are one object, so that one can stand in the key of a cache.
 
     Parameters
     ----------

@@ -36,6 +36,10 @@ class _Required:
 REQUIRED: Final = _Required()
 
 
+#: Each means the default of its argument.
+_EMPTY: Final = (Missing, Blank)
+
+
 @dataclass(frozen=True, slots=True)
 class Argument:
     """One argument of a worksheet function.
@@ -167,8 +171,10 @@ def evaluate(function: Function, given: Sequence[Given]) -> Value | Grid:
     reason; any other exception is a defect of the program and is left to the host.
     """
     error = _error_among(given)
-    if error is not None:
-        return error
+    return _computed(function, given) if error is None else error
+
+
+def _computed(function: Function, given: Sequence[Given]) -> Value | Grid:
     try:
         result = function.call(*_read_all(function, given))
     except XleqError as e:
@@ -197,7 +203,7 @@ def _read_all(function: Function, given: Sequence[Given]) -> list[Any]:
         item: Given = given[i] if i < len(given) else MISSING
         if isinstance(item, list) and len(item) == 1 and len(item[0]) == 1:
             item = item[0][0]
-        if isinstance(item, Missing | Blank):
+        if isinstance(item, _EMPTY):
             if isinstance(argument.default, _Required):
                 raise InputError(f"argument {argument.name} is missing or empty: {argument.meaning}")
             if argument.default is None:
@@ -249,22 +255,25 @@ class Memory:
 
     def evaluate(self, function: Function, given: Sequence[Given]) -> Value | Grid:
         """`evaluate`, from memory where the same arguments were asked before."""
-        key = (function.name, *(_key(item) for item in given))
+        # First of all: errors are equal by code alone, and one must not be answered for another.
+        error = _error_among(given)
+        if error is not None:
+            return error
+        key = (function.name, *map(_key, given))
         found = self._results.get(key)
-        if found is None:
-            found = evaluate(function, given)
-            # Errors are equal by code alone: one among the arguments must not be answered for another.
-            if not function.volatile and _error_among(given) is None:
-                self._results[key] = found
-                if len(self._results) > self.size:
-                    self._results.popitem(last=False)
-        else:
+        if found is not None:
             self._results.move_to_end(key)
+            return found
+        found = _computed(function, given)
+        if not function.volatile:
+            self._results[key] = found
+            if len(self._results) > self.size:
+                self._results.popitem(last=False)
         return found
 
 
 def _key(item: Given) -> Hashable:
     # True == 1.0 as a key, yet they are not the same argument.
     if isinstance(item, list):
-        return tuple(tuple((v, True) if v is True or v is False else v for v in row) for row in item)
+        return tuple([tuple([(v, True) if v is True or v is False else v for v in row]) for row in item])
     return (item, True) if item is True or item is False else item
