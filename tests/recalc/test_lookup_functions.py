@@ -203,3 +203,29 @@ def test_a_link_shows_its_second_argument(formula, value):
 def test_what_reaches_outside_the_cells_is_refused_with_a_reason(formula):
     with pytest.raises(FormulaError, match="is not computed: it "):
         evaluate_text(formula)
+
+
+@pytest.mark.parametrize(
+    ("formula", "value"),
+    [
+        ("=MATCH(500,SEQUENCE(1000),0)", 500.0),
+        ("=MATCH(0,SEQUENCE(1000),0)", "#N/A"),
+        ("=MATCH(500.5,SEQUENCE(1000))", 500.0),
+        ("=MATCH(500.5,SEQUENCE(1000,1,1000,-1),-1)", 500.0),
+        ('=MATCH("X500","x"&SEQUENCE(1000),0)', 500.0),
+        ('=MATCH("x*99","x"&SEQUENCE(1000),0)', 99.0),
+        ('=MATCH("x?99","x"&SEQUENCE(1000),0)', 199.0),
+        ("=MATCH(5,IF(SEQUENCE(1000)>100,5,1))", 1000.0),
+        ("=MATCH(3,MOD(SEQUENCE(1000),10),0)", 3.0),
+        ("=XMATCH(3,MOD(SEQUENCE(1000),10),0,-1)", 993.0),
+        ("=XMATCH(500.5,SEQUENCE(1000),-1)", 500.0),
+        ("=XMATCH(500.5,SEQUENCE(1000),1)", 501.0),
+        ("=XMATCH(500,SEQUENCE(1000),0,2)", 500.0),
+        ("=XMATCH(500,SEQUENCE(1000,1,1000,-1),0,-2)", 501.0),
+        ('=XMATCH("x99*","x"&SEQUENCE(1000),2,-1)', 999.0),
+        ("=SUM(XLOOKUP(SEQUENCE(1000),SEQUENCE(1000),SEQUENCE(1000)^2))", 333833500.0),
+        ('=MATCH(7,IF(MOD(SEQUENCE(1000),2),"t",SEQUENCE(1000)))', 6.0),
+    ],
+)
+def test_long_lists_are_searched_as_short_ones_are(formula, value):
+    assert shown(formula) == value

@@ -9,7 +9,7 @@ from __future__ import annotations
 import re
 from bisect import bisect_left, bisect_right
 from collections.abc import Callable, Sequence
-from typing import Any, Final
+from typing import TYPE_CHECKING, Any, Final
 
 from xleq.cells import BLANK, VALUE, CellError, Value
 from xleq.recalc.coerce import collation_key, compare, near
@@ -22,15 +22,25 @@ from xleq.recalc.operands import (
     lookup_key,
 )
 from xleq.recalc.patterns import has_wildcard, line_pattern, wildcard_pattern
+from xleq.recalc.sheets.columns import View
+
+if TYPE_CHECKING:
+    import numpy as np
+    from numpy.typing import NDArray
 
 _KIND: Final[dict[type, int]] = {float: NUMBER_KIND, str: TEXT_KIND, bool: LOGICAL_KIND}
 #: Longest text that can be looked for.
 _LONGEST: Final = 255
 #: So many equal values in a row are walked one by one.
-_NEIGHBOURS: Final = 32
+_NEIGHBOURS: Final = 8
+#: Lists up to this length get an index at once.
+_SHORT: Final = 32
+
+#: A list that is asked so few times is searched without an index.
+_FEW_TIMES: Final = 2
 
 #: Positions of values, and the values or keys at them.
-Run = tuple[list[int], list[Value]]
+Run = tuple[Sequence[int], "Sequence[Value] | NDArray[np.float64]"]
 Keyed = tuple[list[int], list[tuple[int, Any]]]
 
 
@@ -39,8 +49,11 @@ def _run(values: Array, wanted: Value) -> Run:
     kind = _KIND[type(wanted)]
 
     def make(array: Array) -> Run:
-        pairs = [(i, v) for i, v in enumerate(array.flat) if _KIND.get(type(v)) == kind]
-        return [i for i, _ in pairs], [v for _, v in pairs]
+        of_kind = array.kinds.ravel() == kind
+        if of_kind.all():
+            return range(of_kind.size), array.numbers.ravel() if kind == NUMBER_KIND else array.flat
+        places: list[int] = of_kind.nonzero()[0].tolist()
+        return places, [array.flat[i] for i in places]
 
     return values.remembered(f"run {kind}", make)
 
@@ -86,7 +99,31 @@ def exact(values: Array, wanted: Value, wildcards: bool) -> int | None:
         joined = values.remembered("joined", _joined)
         match = line_pattern(wanted.lower(), _SEPARATOR).search(joined)
         return _run(values, "")[0][joined.count(_SEPARATOR, 0, match.start())] if match else None
-    return values.index().get(lookup_key(wanted))
+    found = _scanned(values, wanted)
+    return values.index().get(lookup_key(wanted)) if found is None else found if found >= 0 else None
+
+
+def _scanned(values: Array, wanted: Value) -> int | None:
+    """Position by one pass of numpy, −1 for none; None where an index is the better way.
+
+    Ranges that grow or move from cell to cell are asked once, and an index of each would cost far more.
+    """
+    n = values.height * values.width
+    asked = values.remembered("asked", lambda _: [0])
+    asked[0] += 1
+    if n <= _SHORT or asked[0] > _FEW_TIMES:
+        return None
+    if type(wanted) is float:
+        hits = values.numbers.ravel() == wanted
+    elif type(wanted) is str and values.width == 1 and isinstance(values, View):
+        words, lexicon = values.words()
+        hits = words.ravel() == lexicon.find(wanted) if lexicon.find(wanted) >= 0 else None
+        if hits is None:
+            return -1
+    else:
+        return None
+    at = int(hits.argmax())
+    return at if hits[at] else -1
 
 
 def last_exact(values: Array, wanted: Value, wildcards: bool) -> int | None:
@@ -128,20 +165,24 @@ def last_at_least(values: Array, wanted: Value) -> int | None:
     return places[at] if at >= 0 else None
 
 
-def _bisected(run: Sequence[Value], wanted: Value, descending: bool) -> int:
+def _bisected(run: Sequence[Value] | NDArray[np.float64], wanted: Value, descending: bool) -> int:
     """Position in a run of one kind; −1 before the first.
 
     An equal value ends the bisection, and the last of the equal ones beside it is taken.
     """
     low, high = -1, len(run)
     numbers = type(wanted) is float
+
+    def same(value: Any) -> bool:
+        return compare(float(value) if numbers else value, wanted) == 0
+
     while high - low > 1:
         middle = (low + high) // 2
-        value = run[middle]
+        value = float(run[middle]) if numbers else run[middle]  # type: ignore[arg-type]
         order = (value > wanted) - (value < wanted) if numbers else compare(value, wanted)  # type: ignore[operator]
         if order == 0:
             equal = middle + 1
-            while equal < len(run) and equal - middle < _NEIGHBOURS and compare(run[equal], wanted) == 0:
+            while equal < len(run) and equal - middle < _NEIGHBOURS and same(run[equal]):
                 equal += 1
             if equal - middle < _NEIGHBOURS:
                 return equal - 1
