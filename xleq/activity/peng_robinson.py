@@ -194,18 +194,19 @@ class PengRobinson:
         values, matrix = np.zeros(self.size), np.zeros((self.size, self.size) if slopes else (0, 0))
         if total <= 0.0:
             return values, matrix
-        volume = self.volume(gas, state)
-        part = _Helmholtz(gas, total, volume, self.attraction(state.t), self.b, R_L_BAR * state.t)
+        # For one mole of it: traces of a gas are as good a gas, and their squares would be nothing.
+        volume = self.volume(gas, state) / total
+        part = _Helmholtz(gas / total, 1.0, volume, self.attraction(state.t), self.b, R_L_BAR * state.t)
         g = part.first()
         if state.kind == "P":
-            g = g - math.log(state.p * volume / (total * R_L_BAR * state.t))
+            g = g - math.log(state.p * volume / (R_L_BAR * state.t))
         values[self.inside] = g
         if slopes:
             second = part.second()
             if state.kind == "P":
                 dp_dn, dp_dv = part.pressure_slopes()
-                second = second + 1.0 / total + np.outer(dp_dn, dp_dn) / (part.rt * dp_dv)
-            matrix[np.ix_(self.inside, self.inside)] = second
+                second = second + 1.0 + np.outer(dp_dn, dp_dn) / (part.rt * dp_dv)
+            matrix[np.ix_(self.inside, self.inside)] = second / total
         return values, matrix
 
     def ln_phi_many(self, y: Array, t: Array, p: Array) -> Array:

@@ -12,7 +12,7 @@ from xleq.cells import Grid, Value
 from xleq.constants import u_ln_k_from_fit
 from xleq.equilibrium import State
 from xleq.equilibrium.sensitivity import sensitivities, uncertainty
-from xleq.errors import InputError
+from xleq.errors import InputError, OutOfRangeError
 from xleq.functions.arguments import READERS
 from xleq.functions.composition import FEED, REACTIONS, SPECIES, T
 from xleq.functions.conditions import equilibrium, fits_of, is_data, is_fit, slopes_of, table_of
@@ -21,6 +21,9 @@ from xleq.functions.table import Argument, Example, Function, Result
 
 Texts = tuple[str, ...]
 Numbers = tuple[float, ...]
+
+#: Standard uncertainty of ln K, T [K] or P [bar] beyond which first order means nothing at all.
+_TOO_UNCERTAIN: Final = 1e6
 
 _K: Final = Argument(
     "K", "constants", "constant of each reaction on p° = 1 bar; or data; or coefficients of ln K"
@@ -73,7 +76,10 @@ def _uncertainty(
     read = system(reactions, species, "g")
     solution = equilibrium(read, feed, k, {}, None, fits=True).solve_telling(State("P", t, p=p))
     slopes = _slopes(read, k, t) if u_t else None
-    return _listed(uncertainty(solution, _spread(read, k, u_lnk, t), u_t, u_p, slopes))
+    spread = _spread(read, k, u_lnk, t)
+    if max(*spread, u_t, u_p) > _TOO_UNCERTAIN:
+        raise OutOfRangeError(f"an uncertainty of more than {_TOO_UNCERTAIN:g} says nothing")
+    return _listed(uncertainty(solution, spread, u_t, u_p, slopes))
 
 
 def _spread(read: System, k: Value | Grid, given: Value | Grid, t: float) -> Numbers:
