@@ -4,13 +4,16 @@ from __future__ import annotations
 
 import json
 import sys
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from pathlib import Path
+from typing import TypeVar
 
 from xleq.cells import CellError, Value
 from xleq.cli.show import plain, shown
 from xleq.errors import InputError, XleqError
 from xleq.hosts.headless import FileReport, recalculate_file
+
+_T = TypeVar("_T")
 
 #: Lines of each kind that a terminal gets; JSON has all.
 _MOST_LINES = 20
@@ -78,26 +81,27 @@ def _tell(report: FileReport, *, as_json: bool) -> None:
         f"{report.path}: {found.n_formulas} formulas, {len(found.changed)} cells changed, "
         f"{len(found.kept)} kept, {len(found.disagreements)} disagree"
     )
-    _lines("changed", [f"{c.address}  {_stored(c.stored)} → {shown(c.fresh)}" for c in found.changed])
-    _lines("errors", [f"{address}  {value.code}  {value.reason}" for address, value in report.errors()])
-    _lines("kept their stored value", [f"{k.address}  {_stored(k.stored)}  {k.reason}" for k in found.kept])
+    _lines("changed", found.changed, lambda c: f"{c.address}  {_stored(c.stored)} → {shown(c.fresh)}")
+    _lines("errors", report.errors(), lambda e: f"{e[0]}  {e[1].code}  {e[1].reason}")
+    _lines("kept their stored value", found.kept, lambda k: f"{k.address}  {_stored(k.stored)}  {k.reason}")
     _lines(
         "disagree with their stored value",
-        [f"{d.address}  stored {_stored(d.stored)}, computed {_full(d.fresh)}" for d in found.disagreements],
+        found.disagreements,
+        lambda d: f"{d.address}  stored {_stored(d.stored)}, computed {_full(d.fresh)}",
     )
-    _lines("depend on those", [f"{m.address}  through {m.because}" for m in found.marked])
+    _lines("depend on those", found.marked, lambda m: f"{m.address}  through {m.because}")
     if written is not None:
         kept = f"; the old one is {written.backup}" if written.backup else ""
         print(f"written {written.path}{kept}")
 
 
-def _lines(head: str, lines: list[str]) -> None:
-    if lines:
+def _lines(head: str, items: Sequence[_T], line: Callable[[_T], str]) -> None:
+    if items:
         print(f"  {head}:")
-        for line in lines[:_MOST_LINES]:
-            print(f"    {line}")
-        if len(lines) > _MOST_LINES:
-            print(f"    … and {len(lines) - _MOST_LINES} more (--json lists all)")
+        for item in items[:_MOST_LINES]:
+            print(f"    {line(item)}")
+        if len(items) > _MOST_LINES:
+            print(f"    … and {len(items) - _MOST_LINES} more (--json lists all)")
 
 
 def _stored(value: Value) -> str:

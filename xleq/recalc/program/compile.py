@@ -93,6 +93,8 @@ class Compiler:
             isinstance(node, tree.Infix | tree.Prefix | tree.Postfix) and node.operator in _NOT_A_REFERENCE
         ):
             return run
+        if isinstance(node, tree.Call) and self.gives_values(node, scope):
+            return run
         reduce = contents if array else intersected
 
         def reduced(at: Context) -> Operand:
@@ -100,6 +102,14 @@ class Compiler:
             return reduce(at, found) if isinstance(found, Ref) else found
 
         return reduced
+
+    def gives_values(self, node: tree.Call, scope: Scope) -> bool:
+        """Whether a call never gives a reference: it gets none that it could give, and can't look for any."""
+        native = natives().get(node.name)
+        if native is None or native.context or node.name.lower() in scope or node.own.startswith("["):
+            return False
+        kinds = {p.kind for p in (*native.parameters, *native.repeated)}
+        return kinds.isdisjoint(("range", "operand", "lazy")) and node.name not in self.functions
 
     def operand(self, node: tree.Node, array: bool, scope: Scope) -> Run:
         """An expression that gives whatever it is, a reference too."""
