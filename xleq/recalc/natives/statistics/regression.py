@@ -86,7 +86,23 @@ def _orthogonal(x: NDArray[np.float64]) -> tuple[list[int], Any, Any]:
 
 
 def fit(y: NDArray[np.float64], x: NDArray[np.float64], constant: bool) -> Fit:
-    """Least squares of y [n] on x [n, n_variables], with a constant or through the origin."""
+    """Least squares of y [n] on x [n, n_variables], with a constant or through the origin.
+
+    Raises
+    ------
+    Fail
+        #NUM! where the numbers are too large to be squared.
+    """
+    import numpy as np
+
+    try:
+        with np.errstate(over="raise", invalid="raise", divide="raise"):
+            return _fit(y, x, constant)
+    except FloatingPointError:
+        raise Fail(CellError("#NUM!", "the numbers are too large for a regression")) from None
+
+
+def _fit(y: NDArray[np.float64], x: NDArray[np.float64], constant: bool) -> Fit:
     import numpy as np
 
     n, variables = x.shape
