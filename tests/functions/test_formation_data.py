@@ -78,6 +78,7 @@ def test_properties_of_a_reaction_hang_together() -> None:
 
 def test_a_species_tells_its_range_and_its_source() -> None:
     assert call("XLEQ_SPECIES", ["CaCO3(s)", "T_max"]) == 1200.0
+    assert call("XLEQ_SPECIES", ["Na+", "dHf"]) == call("XLEQ_SPECIES", ["Na+(aq)", "dHf"])
     assert "Active Thermochemical Tables" in call("XLEQ_SPECIES", ["CO2", "source"])
     assert call("XLEQ_SPECIES", ["H2O", "molar_mass"]) == pytest.approx(18.015, abs=0.001)
     _, notes = call_with_notes("XLEQ_K_DATA", ["CO + H2O = CO2 + H2", 1000.0])

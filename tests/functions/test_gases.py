@@ -123,6 +123,25 @@ class TestRealGas:
         assert said in reason(call("XLEQ_FUGACITY_COEFFICIENT", [species, fractions, 700.0, 100.0]))
 
 
+ATM = "basis=Kp[atm]"
+PUBLISHED = [
+    # Verhoek and Daniels, J. Am. Chem. Soc. 53 (1931) 1250: 0.1855 (from memory); K from data is 3 % lower.
+    (("N2O4 = 2 NO2", "data", "N2O4; NO2", "1; 0"), 298.15, "1 atm", "conversion N2O4", "", 0.1855, 0.004),
+    (("N2O4 = 2 NO2", 0.1426, "N2O4; NO2", "1; 0"), 298.15, "1 atm", "conversion N2O4", ATM, 0.1855, 0.0001),
+    # General chemistry textbooks (from memory): Kp 1.78 atm at 250 °C.
+    (("PCl5 = PCl3 + Cl2", 1.78, "PCl5; PCl3; Cl2", "1; 0; 0"), 523.0, "1 atm", "conversion PCl5", ATM, 0.800,
+     0.001),
+    # NIST-JANAF constants, 7 SO2 / 11 O2 / 82 N2 at 900 K: 0.6671.
+    (("SO2 + 1/2 O2 = SO3", "data", "SO2; O2; N2; SO3", "7; 11; 82; 0"), 900.0, "1 atm", "conversion SO2", "",
+     0.6671, 0.002),
+]  # fmt: skip
+
+
+@pytest.mark.parametrize(("given", "t", "p", "want", "options", "published", "allow"), PUBLISHED)
+def test_a_published_composition_is_found(given, t, p, want, options, published, allow) -> None:
+    assert at_p(given, t, p, want, options) == pytest.approx(published, abs=allow)
+
+
 class TestConstants:
     def test_data_may_stand_in_every_cell_of_k(self) -> None:
         reactions = [[text] for text in REFORMING[0].split("; ")]

@@ -53,9 +53,12 @@ def _reaction(reaction: str, property: str, t: float, data: Grid | None) -> floa
 
 
 def _species(species: str, property: str, t: float, data: Grid | None) -> float | str:  # noqa: A002
+    read = parse_species(species)
     if property == "molar_mass":
-        return molar_mass(parse_species(species).name)
-    found = table_of(data).find(species)
+        return molar_mass(read.name)
+    # An ion without a phase is dissolved, here as in reactions.
+    found = table_of(data).find(species, "aq" if read.charge else "g")
+    tell([f"{found.key}: {found.note}"] if found.note else [])
     if property == "source":
         return _source_of(found)
     fixed = {"dHf": found.dhf, "T_min": found.t_min, "T_max": found.t_max}
@@ -126,7 +129,7 @@ FUNCTIONS: Final = (
         "XLEQ_SPECIES",
         "thermochemistry",
         (
-            Argument("species", "text", "formula with its phase; a gas where none is written"),
+            Argument("species", "text", "formula with its phase; without one a gas, or an ion in water"),
             Argument("property", "word", "what is wanted", known=_SPECIES_PROPERTIES),
             _T_STANDARD,
             DATA,
