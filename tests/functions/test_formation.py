@@ -157,6 +157,17 @@ class TestAdiabatic:
         assert call("XLEQ_REACTION", ["CaCO3(s) = CaO(s) + CO2", "lnK", t]) == pytest.approx(0.0, abs=1e-6)
         assert "a phase is changing in part" in reason(adiabatic(*given, "moles"))
 
+    @pytest.mark.parametrize("inert", [0.1, 1000.0])
+    def test_a_melt_beside_any_amount_of_gas_is_at_its_melting_point(self, inert) -> None:
+        given = ("S(s); S(l); N2", f"0.5; 0.5; {inert}", 388.3, 1.0)
+        t = adiabatic(*given)
+        assert call("XLEQ_REACTION", ["S(s) = S(l)", "lnK", t]) == pytest.approx(0.0, abs=1e-9)
+        assert "a phase is changing in part" in reason(adiabatic(*given, "moles"))
+
+    def test_a_solid_that_melts_where_its_data_end_needs_none_beyond(self) -> None:
+        n = adiabatic("S(s); S(l); N2; H2; O2; H2O", "0.1; 0; 2; 3E-3; 1.5E-3; 0", 385.0, 1.0, "moles")
+        assert [v[0] for v in n[:2]] == [0.0, 0.1]
+
     def test_it_is_extrapolated_only_if_asked_to(self) -> None:
         given = ("CaCO3(s); CaO(s); CO2; N2", "1; 0.1; 0; 1")
         assert "#N/A XLEQ_ADIABATIC: CaCO3(s): the data hold" in reason(adiabatic(*given, 1300.0, 1.0))

@@ -7,16 +7,16 @@ from collections.abc import Sequence
 from dataclasses import replace
 from typing import Final
 
-from xleq.equilibrium import Solution, State, solve
+from xleq.equilibrium import Solution, State
 from xleq.errors import MissingDataError, NoAnswerError
 from xleq.functions.conditions import Constants, Equilibrium
 from xleq.thermo import SpeciesData
 
 #: Factor by which the search goes on from the temperature of the feed.
 _STEP: Final = 1.3
-#: A jump of the enthalpy is told from a slope by this relative step of T and this heat capacity [kJ/(mol K)].
+#: A jump of a phase is told from a slope by this relative step of T and this part of its amount.
 _NEAR: Final = 1e-7
-_STEEPEST: Final = 1000.0
+_AT_ONCE: Final = 1e-3
 #: What is added to G/(R T) of a species that is to stay away; whether it does is looked at.
 _NEVER: Final = 300.0
 #: A species of less than this part of all moles does not count in the enthalpy.
@@ -68,22 +68,24 @@ class EnthalpyBalance:
         NoAnswerError
             If there is no certified equilibrium.
         """
-        state = State("P", t, p=self.p)
         away = [i for i, d in enumerate(self.known) if not d.t_min <= t <= d.t_max]
         if not away or self.extrapolate:
-            return self.found.solve(state)
-        read = self.found.read
-        ln_k = tuple(
-            value - _NEVER * float(sum(row[i] for i in away))
-            for value, row in zip(self.beyond.at(state), read.nu, strict=True)
-        )
-        problem_here = replace(self.found, constants=Constants(lambda _: ln_k)).problem(state)
-        solution = solve(problem_here).require()
+            return self.found.solve(State("P", t, p=self.p))
+        solution = self._without(t, away)
         for i in away:
             if self._is_there(solution, i):
                 self.known[i].h(t)  # raises, with the range
         # Its trace would be of the penalty's making.
         return replace(solution, n=tuple(0.0 if i in away else n for i, n in enumerate(solution.n)))
+
+    def _without(self, t: float, away: list[int]) -> Solution:
+        """The equilibrium with the data used beyond their ends, and with what must not form."""
+        state, read = State("P", t, p=self.p), self.found.read
+        ln_k = tuple(
+            value - _NEVER * float(sum(row[i] for i in away))
+            for value, row in zip(self.beyond.at(state), read.nu, strict=True)
+        )
+        return replace(self.found, constants=Constants(lambda _: ln_k)).solve(state)
 
     @staticmethod
     def _is_there(solution: Solution, i: int) -> bool:
@@ -169,12 +171,16 @@ class EnthalpyBalance:
         return 0.5 * (below + above)
 
     def jumps_at(self, t: float) -> bool:
-        """Whether the enthalpy passes that of the feed in a jump there."""
+        """Whether a pure phase comes or goes at once there, as where it melts."""
         try:
-            span = abs(self.gain(t * (1.0 + _NEAR)) - self.gain(t * (1.0 - _NEAR)))
+            above, below = self.solution(t * (1.0 + _NEAR)).n, self.solution(t * (1.0 - _NEAR)).n
         except (NoAnswerError, MissingDataError):
             return False  # at the very end of the data
-        return span > _STEEPEST * math.fsum(self.found.feed) * t * 2.0 * _NEAR
+        least = _TRACE * math.fsum(above)
+        return any(
+            phase == "pure" and abs(x - y) > max(least, _AT_ONCE * max(x, y))
+            for phase, x, y in zip(self.found.read.phases, above, below, strict=True)
+        )
 
     def _beyond_end(self, t: float) -> list[tuple[SpeciesData, int, float]]:
         """Species that are without data at a temperature or end there, with their place and the end."""
@@ -188,7 +194,14 @@ class EnthalpyBalance:
 
     def _check_left_out(self, t: float) -> None:
         for data, i, end in self._beyond_end(t):
-            if self._is_there(self.solution(end), i):
+            # Just beyond: data often end where a phase melts or begins to.
+            outside = end * (1.0 + _NEAR) if end == data.t_max else end * (1.0 - _NEAR)
+            others = [
+                j
+                for j, d in enumerate(self.known)
+                if j != i and not d.t_min * (1.0 - _NEAR) <= outside <= d.t_max * (1.0 + _NEAR)
+            ]
+            if self._is_there(self._without(outside, others), i):
                 raise MissingDataError(
                     f"{data.key} is still there at {end:g} K, where its data end; the adiabatic temperature "
                     "lies beyond: give data for it, or allow extrapolation (extrapolate=yes)"
