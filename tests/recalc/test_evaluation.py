@@ -22,6 +22,13 @@ def test_an_array_formula_takes_the_whole_range():
     assert got == {"B2": 30.0, "C1": 30.0}
 
 
+def test_an_if_within_an_array_argument_stays_plain_in_a_plain_formula():
+    wanted = "=SUMPRODUCT(IF(A1:A5>2,1,0))"
+    got = fresh({**COLUMN, "B3": wanted, "B1": wanted, "B9": wanted, "C1": Block(wanted, "C1")})
+    assert got == {"B3": 1.0, "B1": 0.0, "B9": VALUE, "C1": 3.0}
+    assert fresh({**COLUMN, "B9": "=SUMPRODUCT(LEN(A1:A5)*(A1:A5>2))"}) == {"B9": 3.0}
+
+
 def test_at_and_single_reduce_a_range_in_an_array_formula():
     got = fresh(
         {**COLUMN, "B2": Block("=@A1:A5*10", "B2", True), "B3": Block("=_xlfn.SINGLE(A1:A5)", "B3", True)}

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from tests.recalc.books import Block, at, book, result
+from xleq.cells import BLANK
 from xleq.workbook import Calculation
 
 CELLS = {"A1": 2, "B1": "=A1*3", "C1": "=B1+1", "D1": "=A1+100"}
@@ -95,3 +96,14 @@ def test_an_iterated_circle_within_the_files_limit_is_left_as_it_is_stored():
     done = result(book({"S": cells}, {"S!A1": 3.0, "S!B1": 3.0}, calculation=settings))
     assert done.disagreements == []
     assert abs(done.values[at("A1")] - 2.0) < 0.002
+
+
+def test_what_reads_a_cell_that_a_spill_has_left_follows():
+    cells = {"A1": Block("=_xlfn.SEQUENCE(C1)", "A1:A3", True), "B1": "=SUM(A1:A3)", "B2": "=A3+1", "C1": 3}
+    stored = {"S!A1": 1.0, "S!A2": 2.0, "S!A3": 3.0, "S!B1": 6.0, "S!B2": 4.0}
+    done = result(book({"S": cells}, stored), overrides={at("C1"): 2.0})
+    assert {c.address: c.fresh for c in done.changed} == {at("A3"): BLANK, at("B1"): 3.0, at("B2"): 1.0}
+    assert done.disagreements == []
+    done = result(book({"S": cells}, stored), overrides={at("C1"): 4.0})
+    assert done.values[at("A4")] == 4.0
+    assert [c.address for c in done.changed] == [at("A4")]

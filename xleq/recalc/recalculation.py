@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import gc
 import time
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
+from contextlib import contextmanager
 from dataclasses import dataclass, field
 from datetime import datetime
 from pathlib import Path
@@ -156,17 +158,30 @@ def recalculate(
     settings = Settings(now or datetime.now(), seed, seconds, not trust)
     inputs = _inputs(book, overrides or {})
     areas: dict[Cell, Any] = {}
-    for _ in range(_ROUNDS):
-        engine = Engine(book, functions, settings, inputs, areas)
-        engine.everything()
-        if not engine.spread.grown:
-            break
-        areas = dict(engine.spread.spills)
-    found = _gathered(engine)
-    if engine.unchecked:
-        found.disagreements += [_change(book, d.cell, d.stored, d.fresh) for d in recheck(engine)]
+    with _without_collection():
+        for _ in range(_ROUNDS):
+            engine = Engine(book, functions, settings, inputs, areas)
+            engine.everything()
+            if not engine.spread.grown:
+                break
+            areas = dict(engine.spread.spills)
+        found = _gathered(engine)
+        if engine.unchecked:
+            found.disagreements += [_change(book, d.cell, d.stored, d.fresh) for d in recheck(engine)]
     found.seconds = time.perf_counter() - start
     return found
+
+
+@contextmanager
+def _without_collection() -> Iterator[None]:
+    """Leave out the search for cyclic garbage: many objects are made here, none of them in cycles."""
+    was_enabled = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if was_enabled:
+            gc.enable()
 
 
 def _inputs(book: Book, overrides: Mapping[CellAddress, Value]) -> dict[Cell, Value]:

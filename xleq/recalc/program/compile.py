@@ -43,6 +43,9 @@ if TYPE_CHECKING:
 #: Names of LET and LAMBDA in scope, in lower case, and their places among the context's `locals`.
 Scope = Mapping[str, int]
 
+#: In a plain formula these stay in value mode even where an array is wanted: `SUMPRODUCT(IF(A1:A5>2,1,0))`
+#: looks at one row unless it is an array formula. (common knowledge of the trade, no source)
+_PLAIN_ALL_THE_SAME: Final = frozenset({"IF", "IFERROR", "IFNA", "CHOOSE"})
 _NOT_A_REFERENCE: Final = frozenset("+-*/^&=<>%") | {"<=", ">=", "<>"}
 
 
@@ -72,6 +75,8 @@ class Compiler:
         self.stores = stores
         self.names = names
         self.functions = functions
+        # whether an argument of kind array is being compiled in a plain formula
+        self._forced = False
 
     def formula(self, node: tree.Node, array: bool) -> Run:
         """A whole formula. A sum or difference at its top snaps to zero."""
@@ -213,6 +218,12 @@ class Compiler:
         """A function by name."""
         from xleq.recalc.program import scopes
 
+        if self._forced and node.name in _PLAIN_ALL_THE_SAME:
+            self._forced = False
+            try:
+                return self.call(node, False, scope)
+            finally:
+                self._forced = True
         bare = node.name.lower()
         if bare in scope:
             place = scope[bare]
@@ -256,7 +267,12 @@ class Compiler:
     def argument(self, kind: str, node: tree.Node, array: bool, scope: Scope) -> Run:
         """An argument compiled as its kind wants it."""
         if kind in ("array", "matrix"):
-            return self.operand(node, True, scope)
+            before = self._forced
+            self._forced = before or not array
+            try:
+                return self.operand(node, True, scope)
+            finally:
+                self._forced = before
         if kind in ("list", "range", "operand", "lazy"):
             return self.operand(node, array, scope)
         return self.scalar(node, array, scope)

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 from xleq.cells import BLANK, MAX_COLUMN, MAX_ROW, CellError, Value, parse_address
 from xleq.recalc.operands import Area, Array, Operand, Ref
 from xleq.recalc.program.operators import stretched
-from xleq.recalc.sheets.columns import KEPT, Cells, Spot, Unsupported
+from xleq.recalc.sheets.columns import CHANGED, KEPT, Cells, Spot, Unsupported
 from xleq.workbook import Formula, FormulaKind
 
 if TYPE_CHECKING:
@@ -110,8 +110,9 @@ class Spreader:
         owners = self._owners[sheet]
         for spot in _spots(expected):
             if not _holds(area, spot) and owners.get(spot) == (row, column):
+                was_blank = self.engine.book.sheets[sheet].stored.get(spot, BLANK) is BLANK
                 self.engine.results[sheet][spot] = BLANK
-                store.put(spot, BLANK)
+                store.put(spot, BLANK, 0 if was_blank or not self.engine.settings.check else CHANGED)
         for spot in _spots(area):
             owners.setdefault(spot, (row, column))
         self.spills[cell] = area
