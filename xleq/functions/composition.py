@@ -58,9 +58,20 @@ def want_argument(word: str) -> Argument:
     return Argument("want", "want", meaning, word)
 
 
+_OPTIONS: Final = {
+    "basis": "basis=Kp[atm]",
+    "gas": "gas=PR or virial",
+    "activity": "activity=davies or debye-huckel",
+    "davies": "davies=0.2",
+    "open": "open=CO2 0.0004 atm",
+    "extrapolate": "extrapolate=yes",
+}
+
+
 def options_argument(*known: str) -> Argument:
     """The argument `options` with the names that it knows."""
-    return Argument("options", "options", "settings such as basis=Kp[atm]", "", known=known)
+    meaning = f"settings with ; between them: {', '.join(_OPTIONS[name] for name in known)}"
+    return Argument("options", "options", meaning, "", known=known)
 
 
 def composition_p(
