@@ -130,7 +130,7 @@ def test_pairs_leave_out_places_where_one_is_no_number(evaluate: Any) -> None:
 @pytest.mark.parametrize(
     ("formula", "value"),
     [
-        # which arguments take arrays in a plain formula: those of the array functions do, of SUM and its kin not
+        # array functions take arrays in a plain formula, SUM and its kin do not
         ("SUM(A1:A5*2)", 6.0),
         ("MAX(A1:A5*2)", 6.0),
         ("LARGE(A1:A5*2,1)", 6.0),
