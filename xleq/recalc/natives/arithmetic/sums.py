@@ -104,7 +104,7 @@ def sumproduct(first: Array, *others: Array) -> float:
     with np.errstate(all="ignore"):
         for array in others:
             products = products * _factors(array)
-        return finite(float(np.add.accumulate(products.ravel())[-1]))
+        return finite(float(products.sum()))
 
 
 def _pairwise(xs: Array, ys: Array, term: Callable[[float, float], float]) -> float:
