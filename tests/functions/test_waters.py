@@ -8,6 +8,7 @@ from pathlib import Path
 
 import pytest
 
+from tests.benchmarks import thermochemistry
 from xleq.cells import BLANK, MISSING, CellError
 from xleq.functions import call, call_with_notes
 
@@ -51,6 +52,13 @@ def test_a_published_water_is_found(row) -> None:
         listed = "; ".join(name for name, _ in solutes)
         found = call("XLEQ_PH", [listed, [[v] for _, v in solutes], model(row["options"])])
     assert found == pytest.approx(float(row["published"]), abs=float(row["allow"])), row["source"]
+
+
+@pytest.mark.parametrize("options", ["", "activity=davies"])
+@pytest.mark.parametrize("carbon", [3.2e-3, 4e-3, 8e-3])
+def test_a_carbonate_water_of_ten_species_agrees_with_one_written_by_hand(carbon, options) -> None:
+    by_hand = thermochemistry.water_by_fsolve(carbon, options)
+    assert thermochemistry.water(carbon, options) == pytest.approx(by_hand, rel=1e-7)
 
 
 def test_constants_from_formation_data_give_the_same_rain() -> None:
