@@ -355,3 +355,19 @@ def test_precedents_are_what_a_formula_names():
     ]  # fmt: skip
     assert found.of(at("A2")) == found.of(at("A3")) == []
     assert found.tree(at("A2")) is None
+
+
+def test_the_longest_sum_is_evaluated_and_its_precedents_told():
+    from xleq.recalc import Precedents, evaluate_text
+
+    text = "=" + "+".join(["A1"] * 2700)
+    made = book({"S": {"A1": 1, "B1": text, "B2": "=" + "-1" * 4000}})
+    assert fresh(made) == {"B1": 2700.0, "B2": -4000.0}
+    assert evaluate_text("=" + "1+" * 4000 + "1") == 4001.0
+    assert len(Precedents(made).of(at("B1"))) == 1
+
+
+def test_a_function_that_calls_itself_without_end_is_an_error():
+    names = (DefinedName("down", "_xlfn.LAMBDA(_xlpm.n,IF(_xlpm.n=0,0,1+down(_xlpm.n-1)))"),)
+    got = fresh(book({"S": {"A1": "=down(-1)", "A2": "=down(400)"}}, names=names))
+    assert (got["A1"].code, got["A2"]) == ("#NUM!", 400.0)

@@ -58,7 +58,7 @@ class Context:
         Whether the formula is evaluated as an array formula.
     """
 
-    __slots__ = ("array_mode", "book", "cause", "column", "locals", "row", "sheet", "trust")
+    __slots__ = ("array_mode", "book", "cause", "column", "depth", "locals", "row", "sheet", "trust")
 
     def __init__(self, book: Surroundings, sheet: int, row: int, column: int, array_mode: bool) -> None:
         self.book = book
@@ -70,6 +70,8 @@ class Context:
         self.locals: tuple[Operand | Missing, ...] = ()
         #: What is known against the cells that were read (`xleq.recalc.sheets.evaluate`).
         self.trust = 0
+        #: LAMBDAs that are being called, one within the other.
+        self.depth = 0
         #: The first of those cells that is held back: (sheet, row, column).
         self.cause: tuple[int, int, int] | None = None
 

@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING, NamedTuple
 from xleq.cells import CellAddress
 from xleq.errors import FormulaError
 from xleq.recalc.context import Context
+from xleq.recalc.depth import deep
 from xleq.recalc.operands import Area, Ref
 from xleq.recalc.program.references import area_of
 from xleq.recalc.sheets.columns import Unsupported
@@ -72,8 +73,9 @@ class Precedents:
         if sheet is None or formula is None:
             return None
         try:
-            return self._engine.program((sheet.index, address.row, address.column), formula).node
-        except Unsupported:
+            with deep():
+                return self._engine.program((sheet.index, address.row, address.column), formula).node
+        except (Unsupported, RecursionError):
             return None
 
 
@@ -84,49 +86,61 @@ def areas_of(engine: Engine, cell: Cell) -> list[Area]:
     if formula is None or formula.text is None:
         return []
     try:
-        node = engine.program(cell, formula).node
-    except Unsupported:
+        with deep():
+            node = engine.program(cell, formula).node
+    except (Unsupported, RecursionError):
         return []
     at = Context(engine, sheet, row, column, False)
-    return list(dict.fromkeys(_areas(engine, node, at, frozenset())))
+    return list(dict.fromkeys(_areas(engine, node, at)))
 
 
-def _areas(engine: Engine, node: tree.Node, at: Context, seen: frozenset[str]) -> Iterator[Area]:
-    match node:
-        case tree.Cells():
-            try:
-                sheets = engine.names.sheets(node.place, at.sheet)
-            except Unsupported:
-                return
-            for sheet in sheets:
-                yield area_of(sheet, node)(at)
-        case tree.Structured():
-            found = engine.names.structured(node, at.sheet)(at)
-            if isinstance(found, Ref):
-                yield from found.areas
-        case tree.Name():
-            word = node.name.casefold()
-            defined = engine.names.defined(node, at.sheet)
-            if defined is not None and word not in seen and not defined.is_macro:
-                try:
-                    inner = parse(defined.text)
-                except FormulaError:
-                    return
-                yield from _areas(engine, inner, at, seen | {word})
-            elif word in engine.names.tables:
-                table = engine.names.tables[word]
-                yield Area(table.sheet, *table.area)
-        case tree.Prefix() | tree.Postfix():
-            yield from _areas(engine, node.operand, at, seen)
-        case tree.Infix():
-            yield from _areas(engine, node.left, at, seen)
-            yield from _areas(engine, node.right, at, seen)
-        case tree.Call():
-            for argument in node.arguments:
-                yield from _areas(engine, argument, at, seen)
-        case tree.Apply():
-            yield from _areas(engine, node.function, at, seen)
-            for argument in node.arguments:
-                yield from _areas(engine, argument, at, seen)
-        case _:
-            return
+def _areas(engine: Engine, whole: tree.Node, at: Context) -> Iterator[Area]:
+    # with a stack of its own: a long sum is a deep tree
+    stack: list[tuple[tree.Node, frozenset[str]]] = [(whole, frozenset())]
+    while stack:
+        node, seen = stack.pop()
+        inner: tuple[tree.Node, ...] = ()
+        match node:
+            case tree.Cells():
+                yield from _of_cells(engine, node, at)
+            case tree.Structured():
+                found = engine.names.structured(node, at.sheet)(at)
+                if isinstance(found, Ref):
+                    yield from found.areas
+            case tree.Name():
+                word = node.name.casefold()
+                meaning = _meaning(engine, node, at)
+                if meaning is not None and word not in seen:
+                    inner, seen = (meaning,), seen | {word}
+                elif meaning is None and word in engine.names.tables:
+                    table = engine.names.tables[word]
+                    yield Area(table.sheet, *table.area)
+            case tree.Prefix() | tree.Postfix():
+                inner = (node.operand,)
+            case tree.Infix():
+                inner = (node.left, node.right)
+            case tree.Call():
+                inner = node.arguments
+            case tree.Apply():
+                inner = (node.function, *node.arguments)
+            case _:
+                pass
+        stack.extend((child, seen) for child in reversed(inner))
+
+
+def _of_cells(engine: Engine, node: tree.Cells, at: Context) -> list[Area]:
+    try:
+        return [area_of(sheet, node)(at) for sheet in engine.names.sheets(node.place, at.sheet)]
+    except Unsupported:
+        return []
+
+
+def _meaning(engine: Engine, node: tree.Name, at: Context) -> tree.Node | None:
+    """Tree of what a defined name stands for; None where there is none that can be read."""
+    defined = engine.names.defined(node, at.sheet)
+    if defined is None or defined.is_macro:
+        return None
+    try:
+        return parse(defined.text)
+    except FormulaError:
+        return None

@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Any
 
 from xleq.cells import BLANK, CellAddress, Value
 from xleq.errors import FormulaError, InputError
+from xleq.recalc.depth import deep
 from xleq.workbook import Area as BookArea
 from xleq.workbook import Book, Results, Sheet, SheetResults
 
@@ -158,7 +159,7 @@ def recalculate(
     settings = Settings(now or datetime.now(), seed, seconds, not trust)
     inputs = _inputs(book, overrides or {})
     areas: dict[Cell, Any] = {}
-    with _without_collection():
+    with _without_collection(), deep():
         for _ in range(_ROUNDS):
             engine = Engine(book, functions, settings, inputs, areas)
             engine.everything()
@@ -278,17 +279,20 @@ def evaluate_text(
         book = Book(Path(), (Sheet("Sheet1", 0, ""),))
     engine = Engine(book, functions or {}, Settings(now or datetime.now(), seed, check=False), {}, {})
     try:
-        run = engine.compilers[0].formula(parse(formula), True)
-        while True:
-            at = engine.place((0, 1, 1), array=True)
-            try:
-                found = run(at)
-                break
-            except Blocked as blocked:
-                for cell in blocked.cells:
-                    engine.settle(cell)
+        with deep():
+            run = engine.compilers[0].formula(parse(formula), True)
+            while True:
+                at = engine.place((0, 1, 1), array=True)
+                try:
+                    found = run(at)
+                    break
+                except Blocked as blocked:
+                    for cell in blocked.cells:
+                        engine.settle(cell)
     except Unsupported as reason:
         raise FormulaError(str(reason)) from None
+    except RecursionError:
+        raise FormulaError("the formula is nested too deeply") from None
     if isinstance(found, Array):
         return Array(found.height, found.width, [single_value(v) for v in found.flat])
     return single_value(found)

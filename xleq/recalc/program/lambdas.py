@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from xleq.cells import MISSING, CellError, Missing
 from xleq.recalc.context import Context
+from xleq.recalc.depth import LAMBDA_LEVELS
 from xleq.recalc.operands import Fail, Operand
 
 
@@ -51,9 +52,13 @@ def call_lambda(function: object, args: Sequence[Operand | Missing]) -> Operand:
     if not n - function.n_optional <= len(args) <= n:
         raise Fail(CellError("#VALUE!", f"the LAMBDA takes {n} arguments, not {len(args)}"))
     at = function.context
+    if at.depth * (n + 1) > LAMBDA_LEVELS:
+        raise Fail(CellError("#NUM!", "a LAMBDA calls itself too deeply"))
     before = at.locals
+    at.depth += 1
     at.locals = function.captured + tuple(args) + (MISSING,) * (n - len(args))
     try:
         return function.body(at)
     finally:
         at.locals = before
+        at.depth -= 1

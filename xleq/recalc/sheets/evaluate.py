@@ -251,6 +251,7 @@ class Engine:
         at.array_mode = array
         at.locals = ()
         at.trust = 0
+        at.depth = 0
         at.cause = None
         return at
 
