@@ -196,6 +196,10 @@ class TestBackwards:
         cold = call("XLEQ_T_FOR", [AMMONIA[0], block, *AMMONIA[2:], 150.0, "fractions NH3", 0.9])
         assert "#NUM! XLEQ_T_FOR: no temperature from 600 to 900 K gives 0.9" in reason(cold)
 
+    def test_a_plain_number_has_no_temperature(self) -> None:
+        found = call("XLEQ_T_FOR", [SHIFT[0], 1.0, *SHIFT[2:], 1.0, "conversion CO", 0.5])
+        assert "#VALUE! XLEQ_T_FOR: K is a plain number, whose change with T is not known" in reason(found)
+
     def test_the_pressure_of_a_composition_is_found_again(self) -> None:
         x = at_p(AMMONIA, 700.0, 87.0, "fractions NH3")
         assert call("XLEQ_P_FOR", [*AMMONIA, 700.0, "fractions NH3", x]) == pytest.approx(87.0, rel=1e-8)

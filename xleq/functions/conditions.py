@@ -154,7 +154,7 @@ def _from_data(read: System, table: Table, *, extrapolate: bool) -> Constants:
     return Constants(at, data, max(d.t_min for d in data), min(d.t_max for d in data))
 
 
-@lru_cache(maxsize=4096)
+@lru_cache(maxsize=512)
 def data_of(read: System, table: Table) -> tuple[ReactionData, ...]:
     """Formation data of each reaction of a system."""
     return tuple(reaction_data(r, table) for r in read.reactions)

@@ -13,7 +13,7 @@ from xleq.equilibrium.inverse import approach, pressure_for, temperature_for
 from xleq.errors import InputError, MissingDataError, NoAnswerError
 from xleq.functions.arguments import Want
 from xleq.functions.composition import DATA, FEED, REACTIONS, SPECIES, K, T
-from xleq.functions.conditions import Equilibrium, equilibrium, table_of
+from xleq.functions.conditions import Equilibrium, equilibrium, is_data, is_fit, table_of
 from xleq.functions.quotients import ln_q_of
 from xleq.functions.reactions import REACTION
 from xleq.functions.results import wanted
@@ -31,7 +31,7 @@ _SOURCE: Final = (
     "without Derivatives, 1973, ch. 4)"
 )
 _ERRORS: Final = (
-    "#VALUE! as XLEQ_COMPOSITION_P; a target that is not one number",
+    "#VALUE! as XLEQ_COMPOSITION_P; a target that is not one number; for T, a K that is a plain number",
     "#N/A as XLEQ_COMPOSITION_P",
     "#NUM! nothing in the interval gives the value (the range reached is told), or several places do",
 )
@@ -67,6 +67,8 @@ def _t_for(
     data: Grid | None,
 ) -> float:
     read = system(reactions, species, "g")
+    if not (is_data(k) or is_fit(k, len(read.reactions))):
+        raise InputError("K is a plain number, whose change with T is not known; give data or coefficients")
     found = equilibrium(read, feed, k, {}, data, fits=True)
     low, high = _known_part(found, t_low, t_high)
     of = _one_number(read, target)
