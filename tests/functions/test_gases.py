@@ -142,6 +142,21 @@ def test_a_published_composition_is_found(given, t, p, want, options, published,
     assert at_p(given, t, p, want, options) == pytest.approx(published, abs=allow)
 
 
+def test_methane_and_steam_at_1000_k_are_as_published() -> None:
+    # Smith, Van Ness and Abbott, 7th ed., 2005, ex. 13.14 (from memory): ΔfG at 1000 K, fractions.
+    ch4, h2o, co, co2 = 19720.0, -192420.0, -200240.0, -395790.0
+    k = [[call("XLEQ_K_FROM_DG", [f"{dg!r} J/mol", 1000.0])] for dg in (co - ch4 - h2o, co2 - co - h2o)]
+    y = column(at_p((REFORMING[0], k, REFORMING[2], "2; 3; 0; 0; 0"), 1000.0, 1.0, "fractions"))
+    assert y == pytest.approx([0.0196, 0.0980, 0.1743, 0.0371, 0.6711], abs=0.0003)
+
+
+def test_an_ester_is_made_as_published() -> None:
+    # The same, ex. 13.8: K 4.8586 at 100 °C, mole fraction of ethyl acetate 0.344 (from memory).
+    given = ["CH3COOH + C2H5OH = CH3COOC2H5 + H2O", 4.8586, "CH3COOH; C2H5OH; CH3COOC2H5; H2O", "1; 1; 0; 0"]
+    found = call("XLEQ_COMPOSITION_X", [*given, "fractions CH3COOC2H5"])
+    assert found == pytest.approx(0.344, abs=0.001)
+
+
 class TestConstants:
     def test_data_may_stand_in_every_cell_of_k(self) -> None:
         reactions = [[text] for text in REFORMING[0].split("; ")]
@@ -170,6 +185,12 @@ class TestConstants:
         )
         assert column(value)[0] == 0.0
         assert "CaCO3(s) extrapolated to 1250 K: its data hold from 273.15 to 1200 K" in notes
+
+
+def test_a_conversion_that_no_cell_can_hold_is_left_empty() -> None:
+    given = ("H2O = H2 + 1/2 O2", 0.01, "H2O; H2; O2", "1E10; 1E-300; 0")
+    assert at_p(given, 700.0, 1.0, "conversion")[1:] == [[""], [""]]
+    assert "next to nothing beside its change" in reason(at_p(given, 700.0, 1.0, "conversion H2"))
 
 
 class TestBackwards:

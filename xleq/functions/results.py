@@ -134,7 +134,8 @@ def _conversion(solution: Solution, i: int, total: float) -> float | str:
         return "none of it is fed"
     change = _change(solution, i, total)
     assert isinstance(change, float)
-    return -change / fed + 0.0
+    conversion = -change / fed + 0.0
+    return conversion if math.isfinite(conversion) else "its feed is next to nothing beside its change"
 
 
 _ONE: Final[dict[str, Callable[[Solution, int, float], float | str]]] = {
