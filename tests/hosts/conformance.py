@@ -97,7 +97,7 @@ def split_call(formula: str, name: str) -> tuple[str, list[str], str]:
 
 
 def _odd_formulas(function: Function) -> Iterator[tuple[str, str, str]]:
-    """Formula, odd value and argument: for each argument a few odd values, all of them in turn."""
+    """Formula, odd value and argument: for each argument an empty cell, 0, and a few others in turn."""
     head, arguments, tail = split_call(function.examples[0].formula, function.name)
     names = list(ODD)
     turn = sum(map(ord, function.name))
@@ -107,10 +107,10 @@ def _odd_formulas(function: Function) -> Iterator[tuple[str, str, str]]:
             changed = arguments + [""] * (i + 1 - len(arguments))
             changed[i] = ODD[odd]
             yield f"{head}{','.join(changed)}{tail}", odd, argument.name
-        if argument.optional:
+        for odd in ("empty cell", "zero"):  # what Calc cannot tell apart
             changed = arguments + [""] * (i + 1 - len(arguments))
-            changed[i] = ODD["empty cell"]
-            yield f"{head}{','.join(changed)}{tail}", "empty cell", argument.name
+            changed[i] = ODD[odd]
+            yield f"{head}{','.join(changed)}{tail}", odd, argument.name
 
 
 def first_of(function: Function) -> Value | Grid:

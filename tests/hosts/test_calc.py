@@ -42,7 +42,14 @@ def test_arguments_left_out_and_text_arguments_that_are_empty_cells_take_their_d
     assert call("XLEQ_KP", (9.6, "N2 + 3 H2 = 2 NH3", 573.0, 0.0, "")) == full
 
 
-def test_a_zero_for_a_temperature_is_no_default() -> None:
+def test_a_zero_for_a_needed_number_is_refused_since_it_may_be_an_empty_cell() -> None:
+    ((found,),) = call("XLEQ_K_FROM_DG", (0.0, 298.15))
+    assert isinstance(found, float)
+    assert found != found
+    assert call("XLEQ_K_FROM_DG", ("0", 298.15)) == ((1.0,),)
+
+
+def test_a_zero_for_an_optional_temperature_is_no_default() -> None:
     ((found,),) = call("XLEQ_REACTION", ("N2 + 3 H2 = 2 NH3", "dH", 0.0, None))
     assert isinstance(found, float)
     assert found != found  # an error, as Calc reads it

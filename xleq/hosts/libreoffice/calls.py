@@ -68,15 +68,18 @@ def _from_calc(item: Any, argument: Argument) -> Given:
     if isinstance(item, tuple):
         return [[_value(v) for v in row] for row in cast(Block, item)]
     value = _value(item)
-    # A single empty cell arrives as 0, which is undone only where 0 cannot have been meant: an empty cell
-    # given for an optional temperature stays 0, and so an error, rather than hide a 0 that was computed.
+    # A single empty cell arrives as 0. Where an argument is needed, 0 is refused as empty: a forgotten cell
+    # must not count as a Gibbs energy of 0 (text "0" is a 0 that was meant). An optional number stays 0,
+    # an error where 0 makes no sense, rather than let a 0 that was computed become a default.
     if value == 0.0 and type(value) is float and _meant_empty(argument):
         return BLANK
     return value
 
 
 def _meant_empty(argument: Argument) -> bool:
-    return argument.kind in _NEVER_NUMBERS or (argument.kind == "block" and argument.default is None)
+    if not argument.optional or argument.kind in _NEVER_NUMBERS:
+        return True
+    return argument.kind == "block" and argument.default is None
 
 
 def _value(value: Any) -> Value:
