@@ -107,3 +107,9 @@ def test_what_reads_a_cell_that_a_spill_has_left_follows():
     done = result(book({"S": cells}, stored), overrides={at("C1"): 4.0})
     assert done.values[at("A4")] == 4.0
     assert [c.address for c in done.changed] == [at("A4")]
+
+
+def test_formulas_without_a_stored_value_are_held_against_nothing():
+    done = result(book({"S": {"A1": "=1/3", "B1": "=A1", "C1": "=A1&B1"}}))
+    assert done.disagreements == []
+    assert {c.address for c in done.changed} == {at("A1"), at("B1"), at("C1")}

@@ -28,6 +28,9 @@ Generated from the function table by `python -m xleq.hosts.reference`; do not ed
   answer, `#N/A` missing data.
 - An equilibrium figure is a limit, not a rate or a design. Have results checked by a qualified person;
   local codes and licensed practice decide.
+- Where the spreadsheet's own functions come out otherwise than in Excel is listed in
+  [DIFFERENCES.md](DIFFERENCES.md); where the hosts differ, in
+  [differences_between_hosts.md](differences_between_hosts.md).
 
 ## Bases of K
 

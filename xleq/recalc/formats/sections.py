@@ -54,8 +54,13 @@ class Section:
 
     @property
     def names_foreign(self) -> bool:
-        """Whether it shows months or days by their names in another language than English."""
-        return self.foreign and any(t.kind in ("month", "day") and len(t.text) > 2 for t in self.tokens)
+        """Whether it shows months, days or eras as they are in another language than English."""
+        return self.foreign and any(
+            t.kind == "era"
+            or (t.kind == "year" and t.text[0] in "eE")
+            or (t.kind in ("month", "day") and len(t.text) > 2)
+            for t in self.tokens
+        )
 
     def has(self, *kinds: TokenKind) -> bool:
         """Whether a token of one of these kinds stands in it."""

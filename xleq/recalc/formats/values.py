@@ -26,7 +26,7 @@ def format_value(value: Value, code: str, date_1904: bool = False) -> str:
     InputError
         If the code is not a number format, or the number is no date where a date is shown.
     FormulaError
-        If the code asks for names of months or days in another language.
+        If the code asks for months, days or eras as they are in another language.
 
     Examples
     --------
@@ -67,7 +67,7 @@ def _number(x: float, sections: tuple[Section, ...], date_1904: bool) -> str:
             return general_text(x)
         raise InputError("no section of the number format takes this number")
     if section.names_foreign:
-        raise FormulaError("the format shows months or days in another language than English")
+        raise FormulaError("the format shows months, days or eras in another language than English")
     if section.is_date and not section.has("digit"):
         return date_section(abs(x) if unsigned else x, section, date_1904)
     if section.has("general"):

@@ -56,8 +56,9 @@ def _check(engine: Engine, cell: Cell, formula: Formula) -> list[Disagreement]:
         fresh = dict(zip(formula.area.places(), map(single_value, values), strict=True))
     else:
         fresh[(row, column)] = single_value(result)
+    # a cell without a stored value has nothing to be held against
     return [
-        Disagreement((sheet, *spot), stored.get(spot, BLANK), value)
+        Disagreement((sheet, *spot), stored[spot], value)
         for spot, value in fresh.items()
-        if not agree(value, stored.get(spot, BLANK), program.tolerance)
+        if stored.get(spot, BLANK) is not BLANK and not agree(value, stored[spot], program.tolerance)
     ]
