@@ -1,3 +1,3 @@
-"""Chemical-equilibrium worksheet functions, headless recalculation, and an audit of every formula."""
+"""Chemical-equilibrium worksheet functions, and the headless recalculation of whole workbooks."""
 
 __version__ = "0.1.0"
