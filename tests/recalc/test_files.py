@@ -7,6 +7,7 @@ import xlsxwriter
 
 from tests.recalc.books import NOW
 from xleq.cells import CellAddress
+from xleq.hosts.headless import recalculate_file
 from xleq.recalc import recalculate
 from xleq.workbook import open_book, write_book
 
@@ -57,3 +58,34 @@ def test_a_changed_input_shrinks_the_spill_in_the_file(made, tmp_path):
     assert [sheet.stored.get((r, 3)) for r in (1, 2, 3)] == [30.0, 40.0, None]
     assert (sheet.stored[(1, 6)], sheet.stored[(2, 1)]) == (70.0, 0.0)
     assert done.disagreements == []
+
+
+def test_newer_errors_written_as_value_errors_are_no_disagreement_and_no_change_the_next_time(tmp_path):
+    path = tmp_path / "newer.xlsx"
+    with xlsxwriter.Workbook(path) as file:
+        sheet = file.add_worksheet("S")
+        sheet.write_column("A1", [1, 2])
+        sheet.write_number("D2", 5)
+        sheet.write_dynamic_array_formula("C1", "=_xlfn._xlws.FILTER(A1:A2,A1:A2>9)")
+        sheet.write_dynamic_array_formula("D1", "=_xlfn.SEQUENCE(3)")
+        sheet.write_formula("E1", "=_xlfn.LAMBDA(_xlpm.x,_xlpm.x)")
+        sheet.write_formula("F1", "=D1+1")
+        sheet.write_formula("F2", "=ERROR.TYPE(C1)")
+        sheet.write_formula("F3", "=IFERROR(D1,0)")
+    first = recalculate_file(path, in_place=True, backup=False, trust_fresh=True, now=NOW)
+    codes = {str(a): e.code for a, e in first.errors()}
+    assert codes == {"S!C1": "#CALC!", "S!D1": "#SPILL!", "S!E1": "#CALC!"}
+    second = recalculate_file(path, in_place=True, backup=False, now=NOW)
+    assert second.complete
+    assert second.found.changed == []
+    assert {str(a): e.code for a, e in second.errors()} == codes
+    third = recalculate(open_book(path), {}, now=NOW, trust_fresh=False)
+    assert (third.changed, third.disagreements, third.kept) == ([], [], [])
+
+
+def test_another_old_error_than_the_stored_one_is_a_disagreement(tmp_path):
+    path = tmp_path / "old.xlsx"
+    with xlsxwriter.Workbook(path) as file:
+        file.add_worksheet("S").write_formula("A1", "=1/0", None, "#VALUE!")
+    done = recalculate(open_book(path), {}, now=NOW, trust_fresh=False)
+    assert [d.fresh.code for d in done.disagreements] == ["#DIV/0!"]

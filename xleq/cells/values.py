@@ -97,6 +97,11 @@ ERRORS: Final[dict[str, CellError]] = {
     )
 }  # fmt: skip
 
+#: Codes that a cell itself can store; the newer errors are #VALUE! there, and told apart by other parts.
+STORED_ERRORS: Final = frozenset(
+    ("#NULL!", "#DIV/0!", "#VALUE!", "#REF!", "#NAME?", "#NUM!", "#N/A", "#GETTING_DATA")
+)
+
 
 def error_named(code: str) -> CellError:
     """The error value that shows as `code`; an unknown code is kept as it is.

@@ -9,7 +9,18 @@ from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import Any, NamedTuple
 
-from xleq.cells import BLANK, CALC, REF, Blank, CellError, Value, address_text, quote_sheet
+from xleq.cells import (
+    BLANK,
+    CALC,
+    REF,
+    STORED_ERRORS,
+    VALUE,
+    Blank,
+    CellError,
+    Value,
+    address_text,
+    quote_sheet,
+)
 from xleq.errors import FormulaError, LimitError
 from xleq.recalc.context import Context
 from xleq.recalc.operands import Area, Array, Operand, Ref
@@ -367,8 +378,18 @@ def single_value(result: Operand) -> Value:
 
 
 def identical(a: Value, b: Value) -> bool:
-    """Whether two values are the same in kind and in every digit."""
-    return type(a) is type(b) and a == b
+    """Whether a fresh value is the stored one in kind and in every digit.
+
+    A newer error such as #SPILL! is stored as #VALUE! where the file has nothing more to tell.
+
+    Examples
+    --------
+    >>> identical(1.0, 1.0), identical(1.0, True), identical(CALC, VALUE), identical(VALUE, CALC)
+    (True, False, True, False)
+    """
+    if type(a) is not type(b):
+        return False
+    return a == b or (b == VALUE and isinstance(a, CellError) and a.code not in STORED_ERRORS)
 
 
 def tolerance_of(text: str) -> float:
@@ -388,4 +409,4 @@ def agree(a: Value, b: Value, tolerance: float = TOLERANCE) -> bool:
         return False
     if type(a) is float and type(b) is float:
         return abs(a - b) <= tolerance * max(abs(a), abs(b))
-    return a == b
+    return identical(a, b)

@@ -5,16 +5,12 @@ from __future__ import annotations
 import math
 from typing import Final
 
-from xleq.cells import BLANK, VALUE, CellError, Value
+from xleq.cells import BLANK, STORED_ERRORS, VALUE, CellError, Value
 from xleq.errors import InputError
 from xleq.workbook.markup import escaped
 
 #: The longest text that a cell holds.
 MAX_TEXT: Final = 32_767
-#: Errors that the file format knows; it keeps the newer ones as #VALUE! beside rich data.
-_STORED_ERRORS: Final = frozenset(
-    ("#NULL!", "#DIV/0!", "#VALUE!", "#REF!", "#NAME?", "#NUM!", "#N/A", "#GETTING_DATA")
-)
 
 
 def number_text(number: float) -> str:
@@ -58,7 +54,7 @@ def same_value(stored: Value, fresh: Value) -> bool:
 
 def _code_of(error: CellError) -> str:
     """The code under which the file keeps an error."""
-    return error.code if error.code in _STORED_ERRORS else "#VALUE!"
+    return error.code if error.code in STORED_ERRORS else "#VALUE!"
 
 
 def markup_of(value: Value, prefix: bytes) -> tuple[bytes, bytes]:
