@@ -4,8 +4,12 @@ Expected values agree with LibreOffice 25.2 where it has the function and follow
 """
 
 import pytest
+import xlsxwriter
 
+from tests.recalc.books import NOW, book, fresh
 from tests.recalc.formulas import shown
+from xleq.recalc import recalculate
+from xleq.workbook import open_book
 
 
 @pytest.mark.parametrize(
@@ -158,3 +162,48 @@ def test_now_is_the_time_that_was_given(formula, value):
 )
 def test_text_is_read_as_a_date_or_a_time(formula, value):
     assert shown(formula) == value
+
+
+TEXT_DATES = {
+    **{f"A{r}": "1/2/2020" for r in range(1, 21)},
+    "B1": '="1/2/2020"+0',
+    "B2": "=A1+1",
+    "B3": "=-A1",
+    "B4": "=SUM(1,A1+0)",
+    "B5": '=YEAR("1/2/2020")',
+    "B6": "=YEAR(A2)*100+MONTH(A2)",
+    "B7": "=SUMPRODUCT(A1:A20*1)",
+    "B8": '=VALUE("1/2/2020")=A1+0',
+    "B9": '=TEXT(A1,"yyyy-mm-dd")',
+    "B10": '=COUNTIF(D1:D2,"1/2/2020")',
+    "B11": '=SUM("1/2/2020")',
+    "B12": '=MAX(1,"1/2/2020")',
+    "D1": 43832,
+    "D2": 42370,
+}
+
+
+@pytest.mark.parametrize(("date_1904", "day"), [(False, 43832.0), (True, 42370.0)])
+def test_dates_in_texts_count_from_the_workbooks_first_day(date_1904, day):
+    values = fresh(book({"S": TEXT_DATES}, date_1904=date_1904))
+    assert [values[f"B{r}"] for r in range(1, 13)] == [
+        *(day, day + 1, -day, day + 1, 2020.0, 202001.0, 20 * day, True, "2020-01-02", 1.0, day, day)
+    ]
+
+
+def test_dates_in_texts_without_a_year_are_of_the_current_one_wherever_a_number_is_wanted():
+    cells = {"A1": '=YEAR("1/2")', "A2": '="1-Jan"+0', "A3": '=VALUE("1-Jan")', "A4": '=COUNT("5-Jul")'}
+    assert list(fresh(cells).values()) == [2026.0, 46023.0, 46023.0, 1.0]
+    in_1904 = fresh(book({"S": cells}, date_1904=True))
+    assert list(in_1904.values()) == [2026.0, 44561.0, 44561.0, 1.0]
+
+
+def test_a_file_that_counts_from_1904_reads_dates_in_texts_so(tmp_path):
+    path = tmp_path / "made.xlsx"
+    with xlsxwriter.Workbook(path, {"date_1904": True}) as file:
+        sheet = file.add_worksheet("S")
+        sheet.write_formula("A1", '="1/2/2020"+0', None, 42370)
+        sheet.write_formula("A2", '=YEAR("1/2/2020")', None, 2020)
+        sheet.write_formula("A3", '=DATE(2020,1,2)="1/2/2020"+0', None, True)
+    done = recalculate(open_book(path), {}, now=NOW, trust_fresh=False)
+    assert (done.changed, done.disagreements, done.kept) == ([], [], [])

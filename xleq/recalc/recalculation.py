@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING, Any
 from xleq.cells import BLANK, CellAddress, Value
 from xleq.errors import FormulaError, InputError
 from xleq.recalc.depth import deep
+from xleq.recalc.texts import reading_dates
 from xleq.workbook import Area as BookArea
 from xleq.workbook import Book, Results, Sheet, SheetResults
 
@@ -159,7 +160,7 @@ def recalculate(
     settings = Settings(now or datetime.now(), seed, seconds, not trust)
     inputs = _inputs(book, overrides or {})
     areas: dict[Cell, Any] = {}
-    with _without_collection(), deep():
+    with _without_collection(), deep(), reading_dates(settings.now.year, book.date_1904):
         for _ in range(_ROUNDS):
             engine = Engine(book, functions, settings, inputs, areas)
             engine.everything()
@@ -279,7 +280,7 @@ def evaluate_text(
         book = Book(Path(), (Sheet("Sheet1", 0, ""),))
     engine = Engine(book, functions or {}, Settings(now or datetime.now(), seed, check=False), {}, {})
     try:
-        with deep():
+        with deep(), reading_dates(engine.now().year, book.date_1904):
             run = engine.compilers[0].formula(parse(formula), True)
             while True:
                 at = engine.place((0, 1, 1), array=True)

@@ -4,9 +4,12 @@ from __future__ import annotations
 
 import math
 import re
+from collections.abc import Iterator
+from contextlib import contextmanager
+from contextvars import ContextVar
 from decimal import ROUND_HALF_UP, Decimal
 from functools import lru_cache
-from typing import Final
+from typing import Final, NamedTuple
 
 from xleq.recalc.days import MONTHS, SECONDS, day_number, month_length
 
@@ -15,6 +18,49 @@ _LONGEST: Final = 20
 #: Longest text that is read as a number, a date or a time.
 _LONGEST_NUMBER: Final = 255
 _SMALLEST_NORMAL: Final = 2.2250738585072014e-308
+
+
+class Calendar(NamedTuple):
+    """How dates in texts are read.
+
+    Parameters
+    ----------
+    year : int or None
+        The current year, for dates that name none; without it such dates are not read.
+    date_1904 : bool
+        Whether serial numbers count from 1904.
+    """
+
+    year: int | None = None
+    date_1904: bool = False
+
+
+_PLAIN_CALENDAR: Final = Calendar()
+_CALENDAR: Final[ContextVar[Calendar]] = ContextVar("calendar", default=_PLAIN_CALENDAR)
+
+
+def calendar() -> Calendar:
+    """How dates in texts are read at present."""
+    return _CALENDAR.get()
+
+
+@contextmanager
+def reading_dates(year: int | None, date_1904: bool) -> Iterator[None]:
+    """Read dates in texts as a workbook does, wherever a text is taken as a number.
+
+    Every operator and every argument may meet such a text, so the workbook's calendar is not handed to each.
+
+    Examples
+    --------
+    >>> with reading_dates(2011, date_1904=True):
+    ...     parse_number("1/2/1904"), parse_number("5-Jul")
+    (1.0, 39267.0)
+    """
+    token = _CALENDAR.set(Calendar(year, date_1904))
+    try:
+        yield
+    finally:
+        _CALENDAR.reset(token)
 
 
 @lru_cache(maxsize=4096)
@@ -60,19 +106,12 @@ _NUMBER = re.compile(
 _FRACTION = re.compile(r"(?P<sign>[+-])? *+(?P<whole>[0-9]+) ++(?P<top>[0-9]{1,5})/(?P<bottom>[0-9]{1,5})")
 
 
-def parse_number(text: str, *, year: int | None = None, date_1904: bool = False) -> float | None:
+def parse_number(text: str) -> float | None:
     """Number that a text stands for where a number is wanted; None if it stands for none.
 
     Signs, thousands separators, ``$``, ``€``, ``%``, parentheses for negative numbers, exponents, fractions
     such as ``1 1/2``, dates, times, and a date with a time. Digits after the fifteenth count as 0.
-
-    Parameters
-    ----------
-    text : str
-    year : int, optional
-        The current year, for dates that name none; without it such dates are not read.
-    date_1904 : bool
-        Date system of the result.
+    Dates are read as `calendar` says.
 
     Examples
     --------
@@ -95,6 +134,7 @@ def parse_number(text: str, *, year: int | None = None, date_1904: bool = False)
             return _fraction(match)
         number = parse_time(text)
         if number is None:
+            year, date_1904 = _CALENDAR.get()
             number = parse_date(text, year=year, date_1904=date_1904)
     return number
 

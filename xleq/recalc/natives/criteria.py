@@ -18,7 +18,7 @@ from xleq.cells import BLANK, ERRORS, VALUE, CellError, Value
 from xleq.recalc.coerce import collation_key
 from xleq.recalc.operands import BLANK_KIND, TEXT_KIND, Array, Fail
 from xleq.recalc.patterns import has_wildcard, wildcard_pattern
-from xleq.recalc.texts import parse_number
+from xleq.recalc.texts import Calendar, calendar, parse_number
 
 if TYPE_CHECKING:
     import numpy as np
@@ -176,7 +176,6 @@ def _operand(text: str) -> Value:
     return ERRORS.get(upper, text)
 
 
-@lru_cache(maxsize=4096, typed=True)
 def read_criterion(value: Value) -> Criterion:
     """The criterion that a value stands for.
 
@@ -190,6 +189,12 @@ def read_criterion(value: Value) -> Criterion:
     >>> [read_criterion(c).met_by("23") for c in (">5", "=23", "<>23")]
     [False, True, True]
     """
+    return _read(value, calendar())
+
+
+@lru_cache(maxsize=4096, typed=True)
+def _read(value: Value, _: Calendar) -> Criterion:
+    # the calendar is there for the cache: a date in the text is another number in another calendar
     if value is BLANK:
         value = 0.0
     if not isinstance(value, str):

@@ -28,7 +28,7 @@ def value_error(reason: str) -> Fail:
 def text(context: Context, value: Value, code: str) -> str:
     """Value in a number format."""
     if isinstance(value, str):
-        number = parse_number(value, year=context.now().year, date_1904=context.date_1904)
+        number = parse_number(value)
         value = value if number is None else number
     try:
         return fitting(format_value(0.0 if value is BLANK else value, code, context.date_1904))
@@ -38,16 +38,14 @@ def text(context: Context, value: Value, code: str) -> str:
         raise Unsupported(str(error)) from None
 
 
-@native("VALUE", "value", context=True)
-def value(context: Context, argument: Value) -> float:
+@native("VALUE", "value")
+def value(argument: Value) -> float:
     """Number that a text stands for."""
     if isinstance(argument, float):
         return argument
     if argument is BLANK:
         return 0.0
-    number = None
-    if isinstance(argument, str):
-        number = parse_number(argument, year=context.now().year, date_1904=context.date_1904)
+    number = parse_number(argument) if isinstance(argument, str) else None
     if number is None:
         raise value_error("the text is not a number")
     return number
