@@ -143,3 +143,49 @@ def test_functions_lists_all_and_shows_one() -> None:
 def test_a_usage_error_exits_with_2() -> None:
     assert xleq("recalc").returncode == 2
     assert xleq("nothing").returncode == 2
+
+
+def test_limits_can_be_set_and_refuse_what_is_over_them(book: Path, tmp_path: Path) -> None:
+    before = book.read_bytes()
+    done = xleq("recalc", book, "--in-place", "--limit", "cells=10")
+    assert done.returncode == 2
+    assert done.stderr.startswith(f"xleq: {book} ")
+    assert "over 10 cells (cells)" in done.stderr
+    done = xleq("check", book, "--limit", "seconds=1E-9", "--json")
+    assert done.returncode == 2
+    refused = json.loads(done.stdout)
+    assert refused["code"] == "book-limit"
+    assert "the limit (seconds) is 1e-09" in refused["refused"]
+    assert str(book) in refused["refused"]
+    assert book.read_bytes() == before
+    done = xleq("check", book, "--limit", "cells=100000", "--limit", "seconds=60", "--limit", "entries=500")
+    assert done.returncode == 0, done.stderr
+
+
+@pytest.mark.parametrize(
+    ("text", "told"),
+    [
+        ("size=5", "'size' is not a limit; the limits are file_size, entries, "),
+        ("cells", "'cells': a limit is written NAME=VALUE"),
+        ("cells=many", "the limit cells must be a whole number above 0, not 'many'"),
+        ("cells=1.5", "the limit cells must be a whole number above 0"),
+        ("seconds=0", "the limit seconds must be a number above 0"),
+    ],
+)
+def test_a_limit_that_is_none_is_told(book: Path, text: str, told: str) -> None:
+    for command in (["check"], ["recalc", "--in-place"]):
+        done = xleq(*command, book, "--limit", text)
+        assert done.returncode == 2
+        assert told in done.stderr
+        assert "Traceback" not in done.stderr
+
+
+def test_the_help_names_every_limit() -> None:
+    from dataclasses import fields
+
+    from xleq.cli.commands import Limit
+    from xleq.workbook import Limits
+
+    (option,) = Limit.__metadata__
+    assert all(f.name in option.help for f in fields(Limits))
+    assert "seconds" in option.help

@@ -31,6 +31,15 @@ Trust = Annotated[
         "--trust-fresh", help="Write fresh values even where a stored value could not be reproduced."
     ),
 ]
+Limit = Annotated[
+    list[str] | None,
+    typer.Option(
+        "--limit",
+        metavar="NAME=VALUE",
+        help="Set a limit against hostile files: file_size, entries, total_size, ratio, ratio_from, "
+        "xml_depth, cells, formula_length, or seconds that a recalculation may take.",
+    ),
+]
 
 
 @app.command("eval")
@@ -56,21 +65,30 @@ def recalc(
     ] = False,
     set_: Set = None,
     trust_fresh: Trust = False,
+    limit: Limit = None,
     json: Json = False,
 ) -> None:
     """Recalculate workbooks and write the fresh values; all else in the file stays as it is."""
     from xleq.cli.recalculate import run
 
-    code = run(books, out=out, in_place=in_place, settings=set_ or [], trust_fresh=trust_fresh, as_json=json)
+    code = run(
+        books,
+        out=out,
+        in_place=in_place,
+        settings=set_ or [],
+        trust_fresh=trust_fresh,
+        limits=limit or [],
+        as_json=json,
+    )
     raise typer.Exit(code)
 
 
 @app.command()
-def check(books: Books, json: Json = False) -> None:
+def check(books: Books, limit: Limit = None, json: Json = False) -> None:
     """Recalculate without writing; fail where stored and fresh values differ."""
     from xleq.cli.recalculate import run_check
 
-    raise typer.Exit(run_check(books, as_json=json))
+    raise typer.Exit(run_check(books, limits=limit or [], as_json=json))
 
 
 @app.command()

@@ -11,7 +11,7 @@ from typing import TypeVar
 from xleq.cells import CellError, Value
 from xleq.cli.show import plain, shown
 from xleq.errors import InputError, XleqError
-from xleq.hosts.headless import FileReport, recalculate_file
+from xleq.hosts.headless import FileReport, read_limits, recalculate_file
 
 _T = TypeVar("_T")
 
@@ -26,6 +26,7 @@ def run(
     in_place: bool,
     settings: Sequence[str],
     trust_fresh: bool,
+    limits: Sequence[str],
     as_json: bool,
 ) -> int:
     """Recalculate and write each workbook; gives the exit code."""
@@ -33,12 +34,19 @@ def run(
         raise InputError("say where the result goes: -o FILE for a copy, or --in-place")
     if out is not None and len(books) > 1 and not out.is_dir():
         raise InputError(f"{len(books)} workbooks need a folder that exists after -o, not {out}")
+    allowed, seconds = read_limits(limits)
     worst = 0
     for path in books:
         target = out / path.name if out is not None and out.is_dir() else out
         try:
             report = recalculate_file(
-                path, target, in_place=in_place, settings=settings, trust_fresh=trust_fresh
+                path,
+                target,
+                in_place=in_place,
+                settings=settings,
+                trust_fresh=trust_fresh,
+                limits=allowed,
+                seconds=seconds,
             )
         except XleqError as e:
             worst = max(worst, _refused(path, e, as_json))
@@ -48,12 +56,13 @@ def run(
     return worst
 
 
-def run_check(books: Sequence[Path], *, as_json: bool) -> int:
+def run_check(books: Sequence[Path], *, limits: Sequence[str], as_json: bool) -> int:
     """Recalculate each workbook without writing; gives the exit code, 1 where values differ."""
+    allowed, seconds = read_limits(limits)
     codes = []
     for path in books:
         try:
-            report = recalculate_file(path)
+            report = recalculate_file(path, limits=allowed, seconds=seconds)
         except XleqError as e:
             codes.append(_refused(path, e, as_json))
             continue

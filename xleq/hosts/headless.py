@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 from datetime import datetime
 from functools import partial
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Final
 
 from xleq.cells import BLANK, CellAddress, CellError, Grid, Value, parse_address
 from xleq.errors import InputError, ParseError
@@ -15,7 +15,10 @@ from xleq.units import number_or_none
 
 if TYPE_CHECKING:
     from xleq.recalc import Recalculation
-    from xleq.workbook import Book, Written
+    from xleq.workbook import Book, Limits, Written
+
+#: Longest time that a recalculation may take where nothing else is said. [s]
+SECONDS: Final = 3600.0
 
 
 class WorksheetFunctions(Mapping[str, Callable[[list[Any]], Any]]):
@@ -114,6 +117,8 @@ def recalculate_file(
     trust_fresh: bool = False,
     now: datetime | None = None,
     seed: int = 0,
+    limits: Limits | None = None,
+    seconds: float = SECONDS,
 ) -> FileReport:
     """Recalculate a workbook and, if asked to, write it.
 
@@ -134,26 +139,33 @@ def recalculate_file(
         What NOW and TODAY tell; the present by default.
     seed : int
         Of the random numbers.
+    limits : Limits, optional
+        Which workbooks are too large; see `read_limits`.
+    seconds : float
+        Longest time that the recalculation may take. [s]
 
     Raises
     ------
     BookError
-        If the workbook is refused; nothing has been written then.
+        If the workbook is refused, or takes too long; nothing has been written then.
     InputError
         If a setting names no input.
     """
     from xleq.recalc import recalculate
     from xleq.workbook import open_book, write_book
+    from xleq.workbook.package import about
 
-    book = open_book(path)
-    found = recalculate(
-        book,
-        worksheet_functions(),
-        overrides=read_settings(book, settings),
-        now=now,
-        seed=seed,
-        trust_fresh=True if trust_fresh else None,
-    )
+    book = open_book(path, limits)
+    with about(path):
+        found = recalculate(
+            book,
+            worksheet_functions(),
+            overrides=read_settings(book, settings),
+            now=now,
+            seed=seed,
+            trust_fresh=True if trust_fresh else None,
+            seconds=seconds,
+        )
     written = None
     if out is not None or in_place:
         if out is not None:
@@ -165,8 +177,53 @@ def recalculate_file(
             in_place=in_place,
             keep_backup=backup,
             recalculate_on_load=bool(found.kept or found.disagreements),
+            limits=limits,
         )
     return FileReport(path, found, written)
+
+
+def read_limits(texts: Sequence[str]) -> tuple[Limits, float]:
+    """Limits from texts such as ``cells=20000000`` or ``seconds=60``.
+
+    Parameters
+    ----------
+    texts : sequence of str
+        ``NAME=VALUE`` with the names of `xleq.workbook.Limits`, or ``seconds``; the last of a name counts.
+
+    Returns
+    -------
+    limits : Limits
+    seconds : float
+        Longest time that a recalculation may take. [s]
+
+    Raises
+    ------
+    InputError
+        If a name is none of a limit, or a value is not a number above 0 (whole, where it counts things).
+
+    Examples
+    --------
+    >>> limits, seconds = read_limits(["cells=2E6", "seconds=0.5"])
+    >>> limits.cells, limits.entries, seconds
+    (2000000, 20000, 0.5)
+    """
+    from xleq.workbook import Limits
+
+    whole = {f.name: isinstance(f.default, int) for f in fields(Limits)} | {"seconds": False}
+    found: dict[str, float] = {}
+    for text in texts:
+        name, equals, value = (part.strip() for part in text.partition("="))
+        if not equals:
+            raise InputError(f"{text!r}: a limit is written NAME=VALUE, for example seconds=60")
+        if name not in whole:
+            raise InputError(f"{name!r} is not a limit; the limits are {', '.join(whole)}")
+        number = number_or_none(value)
+        if number is None or number <= 0 or (whole[name] and number != int(number)):
+            wanted = "a whole number" if whole[name] else "a number"
+            raise InputError(f"the limit {name} must be {wanted} above 0, not {value!r}")
+        found[name] = int(number) if whole[name] else number
+    seconds = found.pop("seconds", SECONDS)
+    return Limits(**found), seconds  # type: ignore[arg-type]
 
 
 def read_settings(book: Book, settings: Sequence[str]) -> Mapping[CellAddress, Value]:

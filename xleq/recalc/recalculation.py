@@ -150,7 +150,7 @@ def recalculate(
     InputError
         If an override names no sheet of the book, or a cell that holds a formula.
     LimitError
-        If it takes too long.
+        If it takes longer; the time is looked at between cells.
     """
     from xleq.recalc.sheets.check import recheck
     from xleq.recalc.sheets.evaluate import Engine, Settings

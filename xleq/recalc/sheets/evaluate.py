@@ -232,8 +232,8 @@ class Engine:
             If they are not.
         """
         self._count += 1
-        if self._count & 1023 == 0 and time.monotonic() > self._deadline:
-            raise LimitError(f"recalculation took longer than {self.settings.seconds:g} s")
+        if self._count & 63 == 0 and time.monotonic() > self._deadline:
+            raise LimitError(f"takes longer to recalculate; the limit (seconds) is {self.settings.seconds:g}")
         sheet, row, column = cell
         formula = self.book.sheets[sheet].formulas[(row, column)]
         at = self.place(cell, array=False)
