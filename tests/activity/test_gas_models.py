@@ -223,21 +223,3 @@ def test_many_states_give_what_one_gives(root):
     np.testing.assert_allclose(many, one, rtol=1e-9, atol=1e-10)
     with pytest.raises(OutOfRangeError):
         model.ln_phi_many(y[:1], t[:1], np.array([-1.0]))
-
-
-@pytest.mark.slow
-def test_the_gas_model_is_fast():
-    import time
-
-    model, state = MODELS["PR"], FluidState("P", 700.0, 200.0)
-    start = time.perf_counter()
-    for _ in range(2000):
-        model.ln_gamma_slopes(MIX, state)
-    alone = (time.perf_counter() - start) / 2000
-    y = np.tile(MIX, (10000, 1))
-    start = time.perf_counter()
-    model.ln_phi_many(y, np.full(10000, 700.0), np.full(10000, 200.0))
-    batch = (time.perf_counter() - start) / 10000
-    print(f"\nPR, 4 gases: ln phi and slopes {alone * 1e6:.0f} µs; ln phi in a batch {batch * 1e6:.2f} µs")
-    assert alone < 500e-6
-    assert batch < 5e-6

@@ -1,5 +1,4 @@
 import math
-import time
 
 import numpy as np
 import pytest
@@ -139,20 +138,3 @@ def test_sources_and_notes_name_every_species():
     reaction = data("PCl5 = PCl3 + Cl2")
     assert len(reaction.sources()) == 3
     assert any("JANAF -360.184" in note for note in reaction.notes(500.0))
-
-
-@pytest.mark.slow
-def test_k_from_data_is_fast():
-    text = "CH4 + H2O = CO + 3H2"
-    data(text).ln_k(900.0)
-    start = time.perf_counter()
-    for i in range(5000):
-        reaction_data(parse_reaction(text, "g")).ln_k(900.0 + 0.01 * i)
-    alone = (time.perf_counter() - start) / 5000
-    t = np.linspace(500.0, 1400.0, 10000)
-    start = time.perf_counter()
-    reaction_data(parse_reaction(text, "g")).ln_k_many(t)
-    batch = (time.perf_counter() - start) / 10000
-    print(f"\nK from data: {alone * 1e6:.1f} µs alone, {batch * 1e6:.2f} µs in a batch")
-    assert alone < 40e-6
-    assert batch < 3e-6
