@@ -5,7 +5,7 @@ from __future__ import annotations
 import pytest
 
 from tests.recalc.books import Block, at, book, fresh, result
-from xleq.cells import BLANK, DIV0, NA, NAME, NULL, REF, SPILL, VALUE
+from xleq.cells import BLANK, DIV0, NA, NAME, NULL, NUM, REF, SPILL, VALUE
 from xleq.errors import InputError, LimitError
 from xleq.workbook import Area, Calculation, DataTable, DefinedName, ExternalBook, Formula, FormulaKind, Table
 
@@ -334,7 +334,7 @@ def test_an_override_changes_what_depends_on_it_and_a_formula_is_refused():
 
 def test_time_is_limited():
     cells = {f"A{r}": "=SUM(B1:B2)" for r in range(1, 3000)}
-    with pytest.raises(LimitError, match="the limit .seconds. is 0"):
+    with pytest.raises(LimitError, match=r"the limit .seconds. is 0"):
         result(cells, seconds=0.0)
 
 
@@ -371,3 +371,33 @@ def test_a_function_that_calls_itself_without_end_is_an_error():
     names = (DefinedName("down", "_xlfn.LAMBDA(_xlpm.n,IF(_xlpm.n=0,0,1+down(_xlpm.n-1)))"),)
     got = fresh(book({"S": {"A1": "=down(-1)", "A2": "=down(400)"}}, names=names))
     assert (got["A1"].code, got["A2"]) == ("#NUM!", 400.0)
+
+
+@pytest.mark.parametrize(
+    ("formula", "code", "reason"),
+    [
+        ("=LN(-1)", "#NUM!", "LN gives no value for these arguments"),
+        ('=LN("-1")', "#NUM!", "LN gives no value for these arguments"),
+        ("=EXP(1000)", "#NUM!", "EXP gives no value for these arguments"),
+        ("=MOD(1,0)", "#DIV/0!", "MOD divides by zero with these arguments"),
+        ("=SUM(SQRT({4,-1}))", "#NUM!", "SQRT gives no value for these arguments"),
+        ("=IRR({1,1,1})", "#NUM!", "IRR gives no value for these arguments"),
+        ("=AVERAGE(A1:A3)", "#DIV/0!", "AVERAGE divides by zero with these arguments"),
+        ('=MATCH("x",{"a","b"},0)', "#N/A", "the value is not found"),
+        ("=POWER(-8,0.3)", "#NUM!", "POWER gives no value for these arguments"),
+        ('=LN("x")', "#VALUE!", "'x' is not a number"),
+    ],
+)
+def test_errors_of_native_functions_have_a_reason(formula, code, reason):
+    found = fresh({"B1": formula})["B1"]
+    assert (found.code, found.reason) == (code, reason)
+
+
+@pytest.mark.parametrize(
+    "formula",
+    ["=LN(A1)", "=SUM(A1:A3)", "=SUM(A1:A100)", "=NA()", "=LN(#NUM!)", "=ABS(LN(A1))", "=MAX({1,#NUM!})"],
+)
+def test_an_error_that_came_with_the_arguments_is_not_blamed_on_the_function(formula):
+    assert fresh({"A1": NUM, "B1": formula})["B1"].reason == ""
+    from_a_formula = fresh({"A1": "=LN(-1)", "B1": "=SQRT(A1)"})["B1"]
+    assert (from_a_formula.reason, from_a_formula.origin) == ("LN gives no value for these arguments", "S!A1")

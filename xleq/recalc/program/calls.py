@@ -11,7 +11,7 @@ from xleq.cells import BLANK, DIV0, MISSING, NA, NUM, VALUE, Blank, CellError, M
 from xleq.recalc.coerce import NOT_A_VALUE, to_logical, to_number, to_text
 from xleq.recalc.context import Context
 from xleq.recalc.natives.table import SCALAR_KINDS, Native, Parameter
-from xleq.recalc.operands import Array, Computed, Fail, Operand, Ref
+from xleq.recalc.operands import ERROR_KIND, Array, Computed, Fail, Operand, Ref
 from xleq.recalc.program.operators import stretched
 from xleq.recalc.program.references import Run, block, constant, contents
 from xleq.recalc.sheets.columns import VOLATILE
@@ -164,7 +164,8 @@ def native_call(native: Native, arguments: Sequence[Callable[[Context], Any] | M
     if numeric and not native.context and not native.volatile and len(runs) == 1:
         return _of_one_number(native, runs[0])
     has_scalars = any(scalar)
-    call = _guarded(native.call) if numeric else native.call
+    call = _guarded(native) if numeric else native.call
+    own = not any(k in _OUT_OF_SIGHT for k in kinds)
     is_volatile = native.volatile and native.name not in _STEADY
     with_context = native.context
 
@@ -179,25 +180,64 @@ def native_call(native: Native, arguments: Sequence[Callable[[Context], Any] | M
                         return _mapped(at, native, call, values, converters, scalar)
                 values = [convert(value) for convert, value in zip(converters, values, strict=True)]
             result = call(at, *values) if with_context else call(*values)
-            return result if type(result) in _PLAIN else plain(result)
         except Fail as fail:
-            return fail.error
+            result = fail.error
+        if type(result) is float:
+            return result
+        if type(result) is CellError and own:
+            return explained(native.name, result, values)
+        return result if type(result) in _PLAIN else plain(result)
 
     return run
 
 
-def _guarded(call: Callable[..., Any]) -> Callable[..., Any]:
+_FEW: Final = 64
+#: Kinds of arguments whose errors are not seen from outside the definition.
+_OUT_OF_SIGHT: Final = frozenset({"range", "operand", "matrix", "lazy"})
+
+
+def explained(name: str, error: CellError, arguments: Sequence[Any]) -> CellError:
+    """An error with a reason: its own, or that the function gives it for its arguments.
+
+    An error that came with the arguments is left as it is.
+
+    Examples
+    --------
+    >>> explained("LN", NUM, [-1.0]).reason, explained("LN", NUM, [NUM]).reason
+    ('LN gives no value for these arguments', '')
+    """
+    if error.reason or error.origin or not arguments:
+        return error
+    for argument in arguments:
+        if isinstance(argument, Array):
+            # the kinds of a long range are known by column; a short one is looked through faster
+            many = argument.height * argument.width > _FEW
+            if argument.span[1] == ERROR_KIND if many else error in argument.flat:
+                return error
+        elif argument == error:
+            return error
+    return _reasoned(error.code, name)
+
+
+def _reasoned(code: str, name: str) -> CellError:
+    does = "divides by zero with" if code == DIV0.code else "gives no value for"
+    return CellError(code, f"{name} {does} these arguments")
+
+
+def _guarded(native: Native) -> Callable[..., Any]:
     """A function of numbers whose failures are error values."""
+    call = native.call
+    no_number, divided = _reasoned(NUM.code, native.name), _reasoned(DIV0.code, native.name)
 
     def guarded(*args: Any) -> Any:
         try:
             result = call(*args)
         except (OverflowError, ValueError):
-            return NUM
+            return no_number
         except ZeroDivisionError:
-            return DIV0
+            return divided
         if type(result) is float and result - result != 0.0:
-            return NUM
+            return no_number
         return result
 
     return guarded
@@ -205,7 +245,7 @@ def _guarded(call: Callable[..., Any]) -> Callable[..., Any]:
 
 def _of_one_number(native: Native, argument: Run) -> Run:
     call = native.call
-    guarded = _guarded(call)
+    guarded = _guarded(native)
 
     def run(at: Context) -> Operand:
         value = argument(at)
@@ -213,17 +253,19 @@ def _of_one_number(native: Native, argument: Run) -> Run:
             if type(value) is float:
                 result = call(value)
                 if type(result) is float:
-                    return result if result - result == 0.0 else NUM
-                return plain(result)
-            if isinstance(value, Array):
+                    if result - result == 0.0:
+                        return result
+                elif type(result) is not CellError:
+                    return plain(result)
+            elif isinstance(value, Array):
                 return _mapped(at, native, guarded, [value], [_number], [True])
-            return plain(guarded(_number(value)))
+        except (Fail, OverflowError, ValueError, ZeroDivisionError):
+            pass  # said by the second call, which has a reason for each
+        try:
+            result = guarded(_number(value))
         except Fail as fail:
-            return fail.error
-        except (OverflowError, ValueError):
-            return NUM
-        except ZeroDivisionError:
-            return DIV0
+            result = fail.error
+        return explained(native.name, result, [value]) if type(result) is CellError else plain(result)
 
     return run
 
@@ -258,7 +300,7 @@ def _mapped(
             given = [convert(v) for convert, v in zip(converters, args, strict=True)]
             results.append(contents(at, plain(call(at, *given) if native.context else call(*given))))
         except Fail as fail:
-            results.append(fail.error)
+            results.append(explained(native.name, fail.error, args))
     return gathered(results, height, width)
 
 
