@@ -183,3 +183,21 @@ def test_the_samples_are_bounded():
 
     search(f, 0.5, 0.0, 1.0)
     assert calls < 30_000
+
+
+def test_rounding_on_a_plateau_is_not_followed_like_a_dip() -> None:
+    asked = []
+
+    def plateau(x: float) -> float:
+        asked.append(x)
+        return 1.0 + 1e-15 * math.sin(1e6 * x) + (max(0.0, x - 4.0))
+
+    assert search(plateau, 0.5, 0.0, 5.0).roots == ()
+    assert len(asked) < 80
+
+
+def test_a_narrow_dip_is_still_followed_to_the_value() -> None:
+    # It crosses 0 within 0.02 either side of its bottom; samples stand 0.16 apart at first.
+    found = search(lambda x: 1.0 - 1.2 / (1.0 + ((x - 2.51) / 0.05) ** 2), 0.0, 0.0, 5.0).roots
+    assert len(found) == 2
+    assert all(abs(1.0 - 1.2 / (1.0 + ((x - 2.51) / 0.05) ** 2)) < 1e-9 for x in found)

@@ -18,6 +18,8 @@ from xleq.errors import AmbiguousError, InputError, NoAnswerError
 #: Samples before refinement, and the most there may be of them after it.
 FIRST_SAMPLES = 33
 MOST_SAMPLES = 400
+#: Times the rise of its flanks that a dip's lowest sample may lie above the value and still be followed. [-]
+FLAT_DIP = 20.0
 #: A bend of more than this part of the range seen is sampled more densely.
 BEND = 0.01
 #: What counts as equal to the wanted value, as a part of the largest value seen.
@@ -172,11 +174,19 @@ def _look_into_dips(sampler: _Sampler) -> None:
 
 
 def _golden(sampler: _Sampler, a: float, b: float, c: float, side: float) -> None:
-    """Golden-section search of a dip; each sample is kept, so that a crossing is seen afterwards."""
+    """Golden-section search of a dip; each sample is kept, so that a crossing is seen afterwards.
+
+    It is given up where the dip is too flat to reach the value: what lies below its lowest sample is of the
+    order of what its flanks have risen above it. Rounding on a plateau looks like a dip, and ends here too.
+    """
     ratio = 0.5 * (3.0 - math.sqrt(5.0))
     for _ in range(60):
+        here = side * sampler.at(b)
+        rise = max(side * sampler.at(a), side * sampler.at(c)) - here
+        if here > FLAT_DIP * rise:
+            return
         s = b + ratio * (c - b) if c - b > b - a else b - ratio * (b - a)
-        g, here = side * sampler.at(s), side * sampler.at(b)
+        g = side * sampler.at(s)
         if not math.isfinite(g) or g <= 0.0 or c - a <= 1e-9 * max(abs(a), abs(c)):
             return
         if g < here:
